@@ -1,0 +1,40 @@
+"""Angles that close on themselves: azimuths modulo 360°, polarisation angles modulo 180°."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+
+def fold(angle: ArrayLike) -> NDArray[np.float64]:
+    """Bring a polarisation angle, or a difference of two, into (−90, 90].
+
+    Parameters
+    ----------
+    angle : array_like
+        Degrees, any shape.
+
+    Returns
+    -------
+    ndarray
+        The same shape, in (−90, 90]; NaN stays NaN.
+
+    Examples
+    --------
+    >>> fold([-90.0, 95.0, 180.0]).tolist()
+    [90.0, -85.0, 0.0]
+    """
+    folded = 90.0 - np.mod(90.0 - np.asarray(angle, dtype=np.float64), 180.0)
+    # np.mod can round up to the period itself for tiny negative arguments; that would be −90.
+    return np.where(folded <= -90.0, 90.0, folded)
+
+
+def wrap_longitude(longitude: ArrayLike) -> NDArray[np.float64]:
+    """Bring a longitude or a difference of longitudes into [−180, 180), degrees, any shape."""
+    return np.mod(np.asarray(longitude, dtype=np.float64) + 180.0, 360.0) - 180.0
+
+
+def wrap_azimuth(azimuth: ArrayLike) -> NDArray[np.float64]:
+    """Bring an azimuth into [0, 360), degrees, any shape."""
+    wrapped = np.mod(np.asarray(azimuth, dtype=np.float64), 360.0)
+    return np.where(wrapped >= 360.0, 0.0, wrapped)
