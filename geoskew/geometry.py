@@ -140,3 +140,22 @@ def separation(first: Local, second: Local) -> Array:
 def dot(first: Local, second: Local) -> Array:
     """Scalar product of two local vectors."""
     return first.east * second.east + first.north * second.north + first.up * second.up
+
+
+def off_axis_and_position_angle(axis: Local, right: Local, top: Local, travel: Local) -> tuple[Array, Array]:
+    """Where directions of travel lie in a satellite's antenna frame.
+
+    Parameters
+    ----------
+    axis, right, top : Local
+        The frame's axes in the local frame of each place (`in_local_frame`).
+    travel : Local
+        Unit vector from the satellite to each place.
+
+    Returns
+    -------
+    tuple of ndarray
+        Angle off the beam axis, and position angle counter-clockwise from the equatorial direction
+        seen from the satellite, in (−180, 180]; degrees.
+    """
+    return separation(axis, travel), np.rad2deg(np.arctan2(dot(travel, top), dot(travel, right)))

@@ -28,7 +28,8 @@ class Layer:
     ``kind``: ``continuous``; ``circular`` with its ``period`` in degrees (360 or 180), whose values
     close on themselves; ``category`` with ``classes`` (code to name); ``flag`` (0 or 1).
     ``needs``: parts of the scenario without which the layer is not offered, of ``"weather"``,
-    ``"terrain"``. ``limits``: what the colour ramp spans; ``contour_step``: distance between
+    ``"terrain"``. ``of``: the satellites (``"before"``, ``"after"``) below whose lowest usable
+    elevation a place has no value. ``limits``: what the colour ramp spans; ``contour_step``: distance between
     isolines in the layer's unit, 0 for none. ``where``: ``"both"``, or ``"sites"`` for layers that
     exist for site lists only.
     """
@@ -44,6 +45,7 @@ class Layer:
     period: float = 0.0
     classes: tuple[tuple[int, str], ...] = ()
     needs: frozenset[str] = frozenset()
+    of: frozenset[str] = frozenset()
     where: Literal["both", "sites"] = "both"
 
     @property
@@ -71,6 +73,7 @@ def layer(
     period: float = 0.0,
     classes: tuple[tuple[int, str], ...] = (),
     needs: tuple[str, ...] = (),
+    of: tuple[str, ...] = (),
     where: Literal["both", "sites"] = "both",
 ) -> Callable[[Callable[[Any], NDArray[Any]]], Callable[[Any], NDArray[Any]]]:
     """Register a function of a situation as the layer of the function's name."""
@@ -97,6 +100,7 @@ def layer(
             period=period,
             classes=classes,
             needs=frozenset(needs),
+            of=frozenset(of),
             where=where,
         )
         return compute

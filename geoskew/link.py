@@ -1,0 +1,176 @@
+"""From decibels of a link to a margin as a function of the feed's setting, and back.
+
+With d the angle between a setting and the one that suits, everything that depends on the setting is
+a constant plus a multiple of cos 2(setting − suits) (and of the sine where a neighbour's carrier is
+polarised otherwise). So the margin has one best setting, falls steadily away from it up to 90° off,
+and the settings that keep a given margin are one arc in closed form. `Response` holds those
+constants for one carrier at one moment; `policies` works on several of them.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from geoskew.angles import fold
+from geoskew.constants import BOLTZMANN_DB
+
+Array = NDArray[np.float64]
+
+# A half-width of 90° or more: every setting is good. Below 0: none is.
+WHOLE_CIRCLE: Final = 90.0
+EMPTY_ARC: Final = -1.0
+
+
+def carrier_to_noise(
+    eirp_dbw: ArrayLike, *, losses_db: ArrayLike, figure_of_merit_db: ArrayLike, symbol_rate_mbaud: ArrayLike
+) -> Array:
+    """C/N in the symbol-rate bandwidth, dB: EIRP − losses + G/T + 228.599 − 10·log10(symbol rate).
+
+    Parameters
+    ----------
+    eirp_dbw : array_like
+        dBW towards the place; NaN outside the coverage gives NaN.
+    losses_db : array_like
+        Free space, gas or rain, and pointing, dB.
+    figure_of_merit_db : array_like
+        G/T, dB/K.
+    symbol_rate_mbaud : array_like
+        Mbaud. The noise bandwidth is the symbol rate, so this is Es/N0 as well.
+    """
+    rate_db = 60.0 + 10.0 * np.log10(np.asarray(symbol_rate_mbaud, dtype=np.float64))
+    budget = np.asarray(eirp_dbw, dtype=np.float64) - losses_db + figure_of_merit_db
+    return np.asarray(budget + BOLTZMANN_DB - rate_db)
+
+
+def ratio(decibels: ArrayLike) -> Array:
+    """10^(dB/10)."""
+    return np.asarray(10.0 ** (np.asarray(decibels, dtype=np.float64) / 10.0))
+
+
+def inverse(decibels: ArrayLike | None) -> Array:
+    """The reciprocal ratio of a C/I or C/N in dB; None: no such noise, so 0."""
+    return np.zeros(()) if decibels is None else ratio(-np.asarray(decibels, dtype=np.float64))
+
+
+@dataclass(frozen=True)
+class Response:
+    """How one carrier's margin depends on the setting: at one moment, dish aim and weather.
+
+    N/C(setting) = uplink + (noise + crossed·X + Σ neighbours) / W, where W and X are the factors on
+    the wanted and the crossed carrier. All ratios are relative to the wanted carrier in a perfectly
+    set feed. Every array broadcasts over the places.
+
+    Attributes
+    ----------
+    suits : ndarray
+        The setting that suits, degrees; NaN where the satellite serves nobody.
+    noise : ndarray
+        Thermal noise and neighbours given as one ratio, over the wanted carrier.
+    crossed : ndarray
+        Crossed carrier's power over the wanted one's; 0 where it is empty.
+    leak : ndarray
+        x (power sum of isolations), or a (sum of amplitudes) with ``phasors``.
+    uplink : ndarray
+        Noise over carrier at the satellite.
+    required_db : float
+        Required Es/N0 and implementation loss.
+    fixed : float or None
+        For circular polarisation: the angle d that holds at any setting (0 for circular into
+        circular, 45 for linear into circular or back). None: d follows the setting.
+    neighbour_even, neighbour_cosine, neighbour_sine : ndarray
+        Neighbours' power over the wanted carrier: even + cosine·cos 2d + sine·sin 2d.
+    """
+
+    suits: Array
+    noise: Array
+    crossed: Array
+    leak: Array
+    uplink: Array
+    required_db: float
+    phasors: bool = False
+    fixed: float | None = None
+    neighbour_even: Array | float = 0.0
+    neighbour_cosine: Array | float = 0.0
+    neighbour_sine: Array | float = 0.0
+
+    def _phase(self) -> Array:
+        """The angle that worst phasors add to |d|, radians: |cos d| − a|sin d| = √(1+a²)·cos(|d| + phase)."""
+        return np.arctan(self.leak) if self.phasors else np.zeros(())
+
+    def _factors(self) -> tuple[Array, Array]:
+        """(m, k) with W = m + k·cos θ and X = m − k·cos θ, θ = 2(|d| + phase)."""
+        if self.phasors:
+            half = 0.5 * (1.0 + self.leak**2)
+            return half, half
+        return 0.5 * (1.0 + self.leak), 0.5 * (1.0 - self.leak)
+
+    def inverse_ratio(self, setting: ArrayLike) -> Array:
+        """(N+I)/C at settings in degrees."""
+        middle, swing = self._factors()
+        if self.fixed is not None:
+            d = np.full(np.shape(self.suits), np.deg2rad(self.fixed))
+            d = np.where(np.isnan(self.suits), np.nan, d)
+        else:
+            d = np.deg2rad(fold(np.asarray(setting, dtype=np.float64) - self.suits))
+        theta = 2.0 * (np.abs(d) + self._phase())
+        cosine = np.cos(theta)
+        wanted = middle + swing * cosine
+        if self.phasors:
+            wanted = np.where(theta >= np.pi, 0.0, wanted)
+        neighbours = self.neighbour_even + self.neighbour_cosine * np.cos(2.0 * d) + self.neighbour_sine * np.sin(2.0 * d)
+        with np.errstate(divide="ignore"):
+            return np.asarray(
+                self.uplink + (self.noise + self.crossed * (middle - swing * cosine) + neighbours) / wanted
+            )
+
+    def margin(self, setting: ArrayLike) -> Array:
+        """Margin in dB at settings in degrees; NaN where `suits` or the carrier has no value."""
+        return np.asarray(-10.0 * np.log10(self.inverse_ratio(setting)) - self.required_db)
+
+    def best_bound(self) -> Array:
+        """A margin that no setting exceeds, dB (the true best one where no neighbour is polarised)."""
+        middle, swing = self._factors()
+        top = np.cos(2.0 * self._phase())
+        least = self.noise + self.crossed * (middle - swing * top) + self.neighbour_even
+        least = least - np.hypot(self.neighbour_cosine, self.neighbour_sine)
+        return np.asarray(-10.0 * np.log10(self.uplink + least / (middle + swing * top)) - self.required_db)
+
+    def arc(self, level_db: ArrayLike) -> tuple[Array, Array]:
+        """Settings that keep at least a margin of `level_db`: middle of the arc and its half-width, degrees.
+
+        The half-width is 90 or more where every setting is good and negative where none is; NaN
+        where there is no carrier. Closed form: A + B·cos θ + C·sin θ ≤ 0.
+        """
+        level = np.asarray(level_db, dtype=np.float64)
+        allowed = ratio(-(level + self.required_db)) - self.uplink
+        if self.fixed is not None:
+            good = self.inverse_ratio(0.0) - self.uplink <= allowed
+            width = np.where(good, WHOLE_CIRCLE, EMPTY_ARC)
+            return np.zeros_like(width), np.where(np.isnan(self.suits), np.nan, width)
+        middle, swing = self._factors()
+        constant = self.noise + self.crossed * middle + self.neighbour_even - allowed * middle
+        cosine = self.neighbour_cosine - swing * (self.crossed + allowed)
+        if self.phasors:
+            return self.suits, _half_width(constant, -cosine, 2.0 * self._phase())
+        size = np.hypot(cosine, self.neighbour_sine)
+        offset = 0.5 * np.arctan2(-np.asarray(self.neighbour_sine), -cosine)
+        return self.suits + np.rad2deg(offset), _half_width(constant, size, np.zeros(())) + 0.0 * self.suits
+
+
+def _half_width(constant: Array, size: Array, phase: Array) -> Array:
+    """Half-width in degrees of {d: constant ≤ size·cos(2|d| + phase)}, NaN kept.
+
+    Worst phasors (phase > 0) never make every setting good while there is noise: at 2|d| + phase =
+    180° nothing is left of the wanted carrier.
+    """
+    with np.errstate(divide="ignore", invalid="ignore"):
+        quotient = np.where(size > 0.0, constant / size, np.sign(constant) * np.inf)
+    angle = np.arccos(np.clip(quotient, -1.0, 1.0))
+    half = np.rad2deg(0.5 * (angle - phase))
+    half = np.where((quotient > 1.0) | (half < 0.0), EMPTY_ARC, half)
+    half = np.where((quotient <= -1.0) & (phase == 0.0), WHOLE_CIRCLE, half)
+    return np.where(np.isnan(constant) | np.isnan(size), np.nan, half)

@@ -1,0 +1,176 @@
+"""The setting that serves both satellites, and its window.
+
+A curve is a `Response` of one carrier at one moment, and a level that this moment is held to. Its
+excess is its margin less that level. The shared setting maximises the least excess of all curves.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Final, NamedTuple
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from geoskew.angles import fold
+from geoskew.link import WHOLE_CIRCLE, Array, Response
+
+# Halvings of the excess between its bounds: 60 dB / 2^44 is 3e-12 dB, which leaves the setting
+# exact to some 1e-6° where two curves cross and, by taking the middle of what is left, at a smooth peak.
+HALVINGS: Final = 44
+
+# Two settings whose turns differ by less than this are the same turn to either side.
+TIE_DEG: Final = 1e-6
+
+# The least excess worth telling apart; it bounds the search from below, not the results.
+LOWEST_EXCESS_DB: Final = -200.0
+
+
+class Curve(NamedTuple):
+    """One carrier at one moment and the margin (dB, broadcastable) that the moment is held to."""
+
+    response: Response
+    held_to: Array
+
+
+@dataclass(frozen=True)
+class Shared:
+    """The shared setting of each place, all in degrees and dB, NaN where there is none.
+
+    ``turn`` is from the present setting, in (−90, 90]; ``low`` and ``high`` are the window, as turns
+    from the present setting that are not folded: low ≤ turn ≤ high. ``excess`` is the least excess.
+    """
+
+    turn: Array
+    excess: Array
+    low: Array
+    high: Array
+
+
+def held_to(best: ArrayLike, *, reserve_db: float, allowed_loss_db: float) -> Array:
+    """What a moment is held to, dB: the reserve, or where even the best misses it, the best less what is allowed."""
+    best = np.asarray(best, dtype=np.float64)
+    return np.where(best < reserve_db, best - allowed_loss_db, np.where(np.isnan(best), np.nan, reserve_db))
+
+
+def least_excess(curves: Sequence[Curve], setting: ArrayLike) -> Array:
+    """The least excess of all curves at settings in degrees, dB."""
+    excess = [curve.response.margin(setting) - curve.held_to for curve in curves]
+    return np.asarray(np.minimum.reduce(np.broadcast_arrays(*excess)))
+
+
+def _arcs(curves: Sequence[Curve], level: Array) -> tuple[list[Array], list[Array]]:
+    pairs = [curve.response.arc(level + curve.held_to) for curve in curves]
+    return [middle for middle, _ in pairs], [half for _, half in pairs]
+
+
+def _in_all(setting: Array, middles: Sequence[Array], halves: Sequence[Array], skip: int) -> Array:
+    """Whether a setting is in every arc but number `skip` (where it is an end, rounding must not decide)."""
+    good = np.ones(np.shape(setting), dtype=bool)
+    for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
+        if number != skip:
+            good = good & (np.abs(fold(setting - middle)) <= half)
+    return good
+
+
+def _meet(middles: Sequence[Array], halves: Sequence[Array]) -> NDArray[np.bool_]:
+    """Whether the arcs have a setting in common."""
+    if len(middles) == 2:
+        gap = np.abs(fold(middles[0] - middles[1]))
+        both = (halves[0] >= 0.0) & (halves[1] >= 0.0)
+        return np.asarray(both & (gap <= halves[0] + halves[1]))
+    none_empty = np.logical_and.reduce([half >= 0.0 for half in halves])
+    all_whole = np.logical_and.reduce([half >= WHOLE_CIRCLE for half in halves])
+    # If the arcs have anything in common, the lower end of one of them is in all the others.
+    found = all_whole
+    for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
+        found = found | ((half < WHOLE_CIRCLE) & _in_all(middle - half, middles, halves, number))
+    return np.asarray(none_empty & found)
+
+
+def _search(curves: Sequence[Curve], shape: tuple[int, ...]) -> tuple[Array, Array]:
+    """The greatest level of excess at which all arcs still meet, bracketed: (met, not met)."""
+    bound = [curve.response.best_bound() - curve.held_to for curve in curves]
+    high = np.broadcast_to(np.minimum.reduce(np.broadcast_arrays(*bound)), shape) + 1e-9
+    starts = [np.broadcast_to(least_excess(curves, curve.response.suits), shape) for curve in curves]
+    low = np.maximum(np.maximum.reduce(starts), LOWEST_EXCESS_DB)
+    # The best of the curves' own settings is reached; a hair below it rounding cannot unmake it.
+    low = low - 1e-9
+    for _ in range(HALVINGS):
+        middle = 0.5 * (low + high)
+        met = _meet(*_arcs(curves, middle))
+        low = np.where(met, middle, low)
+        high = np.where(met, high, middle)
+    return low, high
+
+
+def _place_in_arcs(curves: Sequence[Curve], level: Array, present: Array) -> Array:
+    """The turn to the middle of what the arcs at `level` have in common; ties as in `shared_setting`.
+
+    Each part of the intersection begins at the lower end of some arc; its upper end is the nearest
+    upper end above that.
+    """
+    middles, halves = _arcs(curves, level)
+    best = np.full(np.shape(level), np.nan)
+    for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
+        start = middle - half
+        reach = np.full(np.shape(level), np.inf)
+        for other_middle, other_half in zip(middles, halves, strict=True):
+            ahead = np.mod(other_middle + other_half - start, 180.0)
+            reach = np.where(other_half >= WHOLE_CIRCLE, reach, np.minimum(reach, ahead))
+        good = (half < WHOLE_CIRCLE) & (half >= 0.0) & _in_all(start, middles, halves, number)
+        turn = fold(start + 0.5 * np.where(np.isfinite(reach), reach, 0.0) - present)
+        better = np.isnan(best) | (np.abs(turn) < np.abs(best) - TIE_DEG)
+        clockwise = (np.abs(np.abs(turn) - np.abs(best)) <= TIE_DEG) & (turn > best)
+        best = np.where(good & (better | clockwise), turn, best)
+    return best
+
+
+def shared_setting(curves: Sequence[Curve], present: ArrayLike) -> Shared:
+    """The setting that maximises the least excess of all curves, and its window.
+
+    Parameters
+    ----------
+    curves : sequence of Curve
+        At least one before and one after, linear carriers. Broadcastable over the places.
+    present : array_like
+        The present setting, degrees.
+
+    Returns
+    -------
+    Shared
+        NaN where any curve has no value. Ties go to the smaller turn, then clockwise. Where no
+        setting keeps what both moments are held to, only ``low`` and ``high`` are NaN.
+
+    Notes
+    -----
+    Settings that keep a level are one arc a curve in closed form, so the search runs over the level
+    (bisection for all places at once) and never over settings; the optimum may sit on a kink.
+    """
+    present = np.asarray(present, dtype=np.float64)
+    shape = np.broadcast_shapes(
+        present.shape,
+        *(np.broadcast_shapes(c.response.suits.shape, c.response.noise.shape, c.held_to.shape) for c in curves),
+    )
+    low, _ = _search(curves, shape)
+    turn = _place_in_arcs(curves, low, np.broadcast_to(present, shape))
+    excess = least_excess(curves, present + turn)
+    window_low, window_high = _window(curves, present, turn)
+    # The setting lies in the window exactly when a window exists.
+    has = np.isfinite(turn) & (excess >= 0.0)
+    return Shared(turn, excess, np.where(has, window_low, np.nan), np.where(has, window_high, np.nan))
+
+
+def _window(curves: Sequence[Curve], present: Array, turn: Array) -> tuple[Array, Array]:
+    """Turns at which the first curve is left, going down and going up from the shared setting."""
+    middles, halves = _arcs(curves, np.zeros(np.shape(turn)))
+    down = np.full(np.shape(turn), np.inf)
+    up = np.full(np.shape(turn), np.inf)
+    for middle, half in zip(middles, halves, strict=True):
+        offset = fold(present + turn - middle)
+        whole = half >= WHOLE_CIRCLE
+        down = np.where(whole, down, np.minimum(down, np.maximum(half + offset, 0.0)))
+        up = np.where(whole, up, np.minimum(up, np.maximum(half - offset, 0.0)))
+    everything = np.isinf(down)
+    return np.where(everything, -90.0, turn - down), np.where(everything, 90.0, turn + up)

@@ -1,0 +1,283 @@
+"""Everything that the layers need of one scenario over one set of places, computed once and when asked for."""
+
+from __future__ import annotations
+
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from geoskew import decision, geometry, policies
+from geoskew.angles import fold
+from geoskew.geometry import Array
+from geoskew.link import Response
+from geoskew.places import Places
+from geoskew.policies import Curve, Shared
+from geoskew.scenario import Scenario
+from geoskew.situation import carriers
+from geoskew.situation.carriers import BEFORE, MIXED_DEG, REALIGNED, UNTOUCHED, Link, Moment, Stand
+from geoskew.situation.inputs import Inputs, prepare
+from geoskew.situation.neighbours import interference
+from geoskew.situation.ports import is_linear, port_offset
+from geoskew.situation.sky import SkyModel
+from geoskew.situation.views import View
+
+
+class Situation:
+    """A scenario over places. Arrays broadcast to ``places.shape``; NaN where there is no value."""
+
+    def __init__(self, scenario: Scenario, places: Places, inputs: Inputs | None = None) -> None:
+        self.scenario = scenario
+        self.places = places
+        self.inputs = prepare(scenario) if inputs is None else inputs
+        self._links: dict[tuple[Stand, bool, int], Link] = {}
+        self._responses: dict[tuple[Stand, bool], list[Response]] = {}
+
+    # Satellites -------------------------------------------------------------------------------
+
+    @cached_property
+    def before(self) -> View:
+        """The satellite in service."""
+        return View(self.scenario.outgoing, self.places, self.inputs.coverage_before)
+
+    @cached_property
+    def after(self) -> View:
+        """The satellite that takes over."""
+        return View(self.scenario.incoming, self.places, self.inputs.coverage_after)
+
+    def view(self, moment: Moment) -> View:
+        """The satellite that carries the traffic at a moment."""
+        return self.before if moment == "before" else self.after
+
+    @cached_property
+    def usable_before(self) -> NDArray[np.bool_]:
+        """Where the old satellite serves."""
+        return self.before.usable(self.scenario.lowest_elevation_deg)
+
+    @cached_property
+    def usable_after(self) -> NDArray[np.bool_]:
+        """Where the new satellite serves."""
+        return self.after.usable(self.scenario.lowest_elevation_deg)
+
+    @cached_property
+    def seen_after(self) -> Array:
+        """Setting that suits the new satellite in a dish on the old slot, degrees."""
+        return self.after.seen_from(self.before)
+
+    @cached_property
+    def separation(self) -> Array:
+        """Angle between the two lines of sight, degrees."""
+        return geometry.separation(self.before.sight.direction, self.after.sight.direction)
+
+    # Terminal ---------------------------------------------------------------------------------
+
+    def terminal(self, key: str) -> Any:
+        """A terminal's value at each place: its own where it has one, else the scenario's."""
+        default = getattr(self.scenario.terminal, key)
+        own = self.places.columns.get(key)
+        return default if own is None else np.where(np.isnan(own), default, own)
+
+    @cached_property
+    def present(self) -> Array:
+        """The present setting, degrees: measured where it was, else aligned to the old satellite."""
+        aligned = self.before.skew
+        measured = self.places.columns.get("setting_deg")
+        if measured is None:
+            return aligned
+        return np.where(np.isnan(measured), aligned, fold(measured))
+
+    @cached_property
+    def port_offset(self) -> list[Array]:
+        """Degrees to add, a carrier, to the angle that suits the new satellite: 90 where one port must serve it."""
+        return port_offset(self.scenario.carriers_before, self.scenario.carriers_after, self.terminal("ports"))
+
+    @cached_property
+    def fixed(self) -> dict[Moment, list[float | None]]:
+        """A carrier at a moment: None where its mismatch follows the setting, else the angle that always holds."""
+        feed = [is_linear(carrier) for carrier in self.scenario.carriers_before]
+        return {
+            "before": [None if linear else 0.0 for linear in feed],
+            "after": [
+                (None if linear else 0.0) if is_linear(carrier) == linear else MIXED_DEG
+                for carrier, linear in zip(self.scenario.carriers_after, feed, strict=True)
+            ],
+        }
+
+    @cached_property
+    def turning_helps(self) -> bool:
+        """Whether any carrier is linear both before and after; else no setting is better than another."""
+        return any(
+            one is None and other is None
+            for one, other in zip(self.fixed["before"], self.fixed["after"], strict=True)
+        )
+
+    @cached_property
+    def common_offset(self) -> Array:
+        """The port offset where all new carriers share it, else 0: what a realigned feed is turned to besides skew."""
+        offsets = self.port_offset
+        return np.minimum.reduce(np.broadcast_arrays(*offsets)) if offsets else np.zeros(())
+
+    # Links ------------------------------------------------------------------------------------
+
+    def carriers(self, moment: Moment) -> Any:
+        """The carriers of a moment, in the scenario's order."""
+        return self.scenario.carriers_before if moment == "before" else self.scenario.carriers_after
+
+    @cached_property
+    def sky(self) -> SkyModel:
+        """Attenuation on the paths to both satellites."""
+        return SkyModel(self)
+
+    def off_axis(self, stand: Stand) -> Array:
+        """Angle between the dish's axis and the satellite, pointing error included, degrees."""
+        error = np.asarray(self.terminal("pointing_error_deg"), dtype=np.float64)
+        return np.hypot(error, self.separation) if stand.stays else error
+
+    def link(self, stand: Stand, number: int, *, rain: bool) -> Link:
+        """The link of carrier `number` with a perfectly set feed."""
+        key = (stand, rain, number)
+        if key not in self._links:
+            view = self.view(stand.moment)
+            self._links[key] = carriers.link(
+                self.carriers(stand.moment)[number],
+                eirp=view.eirp,
+                range_km=view.sight.range_m / 1000.0,
+                sky=self.sky.path(stand.moment, number, rain=rain),
+                off_axis=self.off_axis(stand),
+                dish=self.terminal,
+            )
+        return self._links[key]
+
+    def suits(self, stand: Stand, number: int) -> Array:
+        """The setting that suits carrier `number`, degrees; NaN where the satellite serves nobody."""
+        if stand.moment == "before":
+            return np.where(self.usable_before, self.before.skew, np.nan)
+        offset = self.port_offset[number]
+        if stand.stays:
+            return np.where(self.usable_before & self.usable_after, fold(self.seen_after + offset), np.nan)
+        return np.where(self.usable_after, fold(self.after.skew + offset), np.nan)
+
+    def responses(self, stand: Stand, *, rain: bool) -> list[Response]:
+        """How each carrier's margin depends on the setting."""
+        key = (stand, rain)
+        if key not in self._responses:
+            self._responses[key] = [
+                self._response(stand, number, rain) for number in range(len(self.carriers(stand.moment)))
+            ]
+        return self._responses[key]
+
+    def _response(self, stand: Stand, number: int, rain: bool) -> Response:
+        carrier = self.carriers(stand.moment)[number]
+        terms = self.link(stand, number, rain=rain)
+        phasors = self.scenario.decision.addition == "phasor"
+        leak = carriers.leak(
+            carrier,
+            satellite_db=self.view(stand.moment).satellite.isolation_db,
+            dish=self.terminal,
+            off_axis=self.off_axis(stand),
+            rain_db=terms.sky.depolarisation,
+            phasors=phasors,
+        )
+        return carriers.response(
+            carrier,
+            terms,
+            suits=self.suits(stand, number),
+            leak=leak,
+            phasors=phasors,
+            fixed=self.fixed[stand.moment][number],
+            neighbours=interference(self, stand, number),
+        )
+
+    # Margins ----------------------------------------------------------------------------------
+
+    @property
+    def judged_in_rain(self) -> bool:
+        """Whether the margins that decide are those in rain."""
+        return bool(self.scenario.judged_in == "rain")
+
+    def margin(self, stand: Stand, setting: Any, *, rain: bool) -> Array:
+        """Least margin over all carriers at a setting, dB."""
+        margins = [one.margin(setting) for one in self.responses(stand, rain=rain)]
+        return np.asarray(np.minimum.reduce(np.broadcast_arrays(*margins)))
+
+    def deciding_margin(self, stand: Stand, setting: Any) -> Array:
+        """The same, in the weather that decides."""
+        return self.margin(stand, setting, rain=self.judged_in_rain)
+
+    @cached_property
+    def setting_realigned(self) -> Array:
+        """Absolute setting of a feed realigned for the new satellite, degrees."""
+        return np.where(self.usable_after, fold(self.after.skew + self.common_offset), np.nan)
+
+    @cached_property
+    def best_before(self) -> Array:
+        """Deciding margin before, with the feed aligned to the old satellite, dB."""
+        return self.deciding_margin(BEFORE, self.before.skew)
+
+    @cached_property
+    def best_after(self) -> Array:
+        """Deciding margin after, with dish and feed set for the new satellite, dB."""
+        return self.deciding_margin(REALIGNED, self.setting_realigned)
+
+    def curves(self) -> list[Curve]:
+        """All carriers of both moments with what each moment is held to."""
+        rule = self.scenario.decision
+        both = []
+        for stand, best in ((BEFORE, self.best_before), (UNTOUCHED, self.best_after)):
+            held = policies.held_to(best, reserve_db=rule.reserve_db, allowed_loss_db=rule.allowed_loss_db)
+            both += [Curve(one, held) for one in self.responses(stand, rain=self.judged_in_rain)]
+        return both
+
+    @cached_property
+    def shared(self) -> Shared:
+        """The shared setting and its window; without values where no turn changes anything."""
+        if not self.turning_helps:
+            none = np.full(self.places.shape, np.nan)
+            return Shared(none, none, none, none)
+        return policies.shared_setting(self.curves(), self.present)
+
+    @cached_property
+    def setting_shared(self) -> Array:
+        """Absolute shared setting, degrees."""
+        return fold(self.present + self.shared.turn)
+
+    @cached_property
+    def policy_shared(self) -> Array:
+        """The setting that the policy `shared` leaves: the present one where no turn changes anything."""
+        return self.setting_shared if self.turning_helps else self.present
+
+    @cached_property
+    def policy_reversed(self) -> Array:
+        """The setting that the shared turn, made the wrong way, leaves."""
+        return fold(self.present - self.shared.turn) if self.turning_helps else self.present
+
+    @cached_property
+    def action(self) -> NDArray[np.uint8]:
+        """Action by code, at every place."""
+        return decision.action(
+            new_satellite_usable=self.usable_after,
+            margin_untouched=self.deciding_margin(UNTOUCHED, self.present),
+            margin_realigned=self.best_after,
+            best_without_aiming=self.deciding_margin(UNTOUCHED, fold(self.seen_after + self.common_offset)),
+            window_exists=np.isfinite(self.shared.low),
+            reserve_db=self.scenario.decision.reserve_db,
+            slots_differ=self.scenario.slots_differ,
+            turning_helps=self.turning_helps,
+        )
+
+    def weakest(self, moment: Moment) -> NDArray[np.int64]:
+        """Number of the carrier with the least margin at a perfect setting (dish on that satellite)."""
+        stand = BEFORE if moment == "before" else REALIGNED
+        responses = self.responses(stand, rain=self.judged_in_rain)
+        margins = np.broadcast_arrays(*(one.margin(one.suits) for one in responses))
+        # Where there is no value any carrier may stand for it: the result has none either.
+        return np.asarray(np.argmin(np.nan_to_num(np.stack(margins), nan=np.inf), axis=0))
+
+    def of_weakest(self, moment: Moment, values: list[Array]) -> Array:
+        """Of one array a carrier, the value of the weakest carrier at each place."""
+        if len(values) == 1:
+            return values[0]
+        weakest = self.weakest(moment)
+        shape = np.broadcast_shapes(weakest.shape, *(np.shape(value) for value in values))
+        return np.choose(np.broadcast_to(weakest, shape), [np.broadcast_to(value, shape) for value in values])
