@@ -50,7 +50,7 @@ def _known_waveform(value: object) -> str:
 
 
 class Carrier(Table):
-    """One carrier at one moment, overrides applied; ``required_es_n0_db`` follows from ``modcod`` if given."""
+    """One carrier at one moment, overrides applied; ``required_es_n0_db`` follows a given ``modcod``."""
 
     name: Annotated[str, text("the carrier's name", without=",;|")]
     polarisation: Polarisation = Field(description='"V", "H", "L" or "R"')

@@ -66,7 +66,10 @@ def _something_to_assess(document: Document) -> Iterator[Fault]:
     )
     has_query = isinstance(database, dict) and "query" in database
     if not (has_region or has_query or "sites" in document):
-        yield (), "there is neither a [region] nor [sites]: add one of them, so that there is something to assess"
+        yield (
+            (),
+            "there is neither a [region] nor [sites]: add one of them, so that there is something to assess",
+        )
     if has_query and "sites" in document:
         yield ("database", "query"), "[sites] names a file too: keep one source of the site list"
 
@@ -87,7 +90,10 @@ def _region_and_step(document: Document) -> Iterator[Fault]:
     elif "step_m" in region and "crs" not in region:
         yield (*place, "step_m"), 'needs crs = "EPSG:...", a projected system in metres; or give step_deg'
     elif "crs" in region and "step_m" not in region:
-        yield (*place, "crs"), "needs step_m, the size of a cell in metres; or leave crs out and give step_deg"
+        yield (
+            (*place, "crs"),
+            "needs step_m, the size of a cell in metres; or leave crs out and give step_deg",
+        )
     elif "step_deg" not in region and "step_m" not in region:
         yield place, "has no step: give step_deg, or crs with step_m"
     else:
@@ -104,14 +110,20 @@ def _step_fits(region: Document) -> Iterator[Fault]:
     west, south, east, north = bounds
     extent = min((east - west) % 360 or 360, north - south)
     if 0 < extent < step <= 30:
-        yield ("region", "step_deg"), f"{step:g} is larger than the region, {extent:g} across: give a smaller step"
+        yield (
+            ("region", "step_deg"),
+            f"{step:g} is larger than the region, {extent:g} across: give a smaller step",
+        )
 
 
 def _conditions(document: Document) -> Iterator[Fault]:
     """Margins in rain can be judged only with weather."""
     decision = document.get("decision")
     if isinstance(decision, dict) and decision.get("judged_in") == "rain" and "weather" not in document:
-        yield ("decision", "judged_in"), '"rain" needs [weather] with availability_percent: add it, or give "clear"'
+        yield (
+            ("decision", "judged_in"),
+            '"rain" needs [weather] with availability_percent: add it, or give "clear"',
+        )
 
 
 def _crews(document: Document) -> Iterator[Fault]:
@@ -128,7 +140,11 @@ def _first_day(document: Document) -> Iterator[Fault]:
     """Visits begin before the changeover."""
     visits, changeover = document.get("visits"), document.get("changeover")
     first = visits.get("first_day") if isinstance(visits, dict) else None
-    if not isinstance(changeover, datetime) or changeover.tzinfo is None or not 1970 <= changeover.year <= 2200:
+    if (
+        not isinstance(changeover, datetime)
+        or changeover.tzinfo is None
+        or not 1970 <= changeover.year <= 2200
+    ):
         return
     last = changeover.astimezone(UTC).date()
     if isinstance(first, date) and not isinstance(first, datetime) and first > last:
@@ -144,8 +160,8 @@ def _one_kind_of_polarisation(carriers: dict[str, list[Any]]) -> Iterator[Fault]
             odd = next(i for i, kind in enumerate(kinds) if kind in (_CIRCULAR if first else _LINEAR))
             yield (
                 (moment, odd, "polarisation"),
-                f"{shown(kinds[odd])} among carriers such as {shown(kinds[0])}: linear and circular carriers at "
-                "one moment need two feeds; make a scenario for each",
+                f"{shown(kinds[odd])} among carriers such as {shown(kinds[0])}: linear and circular carriers "
+                "at one moment need two feeds; make a scenario for each",
             )
 
 
@@ -157,7 +173,8 @@ def _carriers_within_rain_models(document: Document, carriers: dict[str, list[An
             if frequency_outside_rain_models(frequency):
                 yield (
                     (moment, number, "frequency_ghz"),
-                    f"{shown(frequency)} is above 55 GHz, where the rain model of ITU-R P.618 ends: leave [weather] out",
+                    f"{shown(frequency)} is above 55 GHz, where the rain model of ITU-R P.618 ends: "
+                    "leave [weather] out",
                 )
 
 

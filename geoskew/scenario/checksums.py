@@ -5,7 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 import os
-from collections.abc import Iterator, Mapping
+from collections.abc import Collection, Iterator, Mapping
 from pathlib import Path
 
 from pydantic import BaseModel
@@ -13,8 +13,10 @@ from pydantic import BaseModel
 from geoskew.errors import InputError, Problem
 
 
-def of_files(table: BaseModel, folder: Path) -> dict[str, str]:
+def of_files(table: BaseModel, folder: Path, *, may_be_missing: Collection[Path] = ()) -> dict[str, str]:
     """Return the SHA-256 of every file that a table names, by path relative to ``folder``, sorted.
+
+    Files of ``may_be_missing`` are left out where they do not exist.
 
     Raises
     ------
@@ -23,8 +25,10 @@ def of_files(table: BaseModel, folder: Path) -> dict[str, str]:
     """
     found: dict[str, str] = {}
     for path in _paths(table):
-        for file in sorted(inner for inner in path.rglob("*") if inner.is_file()) if path.is_dir() else [path]:
-            if file.exists():
+        for file in (
+            sorted(inner for inner in path.rglob("*") if inner.is_file()) if path.is_dir() else [path]
+        ):
+            if file.exists() or file not in may_be_missing:
                 found[relative(file, folder)] = _sha256(file)
     return dict(sorted(found.items()))
 

@@ -85,7 +85,9 @@ def prepare(document: dict[str, Any]) -> Prepared:
     """Rearrange a parsed scenario file for the model; unknown keys are reported and left out."""
     prepared = Prepared()
     document = _known_only(document, (), (), prepared.faults)
-    prepared.values = {key: value for key, value in document.items() if key not in ("carrier", "neighbour", "crew")}
+    prepared.values = {
+        key: value for key, value in document.items() if key not in ("carrier", "neighbour", "crew")
+    }
     for side, moment in _MOMENTS.items():
         if "carrier" in document and not isinstance(document["carrier"], dict | list):
             prepared.values[moment] = document["carrier"]
@@ -104,7 +106,9 @@ def prepare(document: dict[str, Any]) -> Prepared:
     return prepared
 
 
-def _known_only(table: dict[str, Any], path: tuple[str, ...], loc: Loc, faults: list[tuple[Loc, str]]) -> dict[str, Any]:
+def _known_only(
+    table: dict[str, Any], path: tuple[str, ...], loc: Loc, faults: list[tuple[Loc, str]]
+) -> dict[str, Any]:
     """Return a table without its unknown keys, and those of the tables within it."""
     kept: dict[str, Any] = {}
     for key, value in table.items():
@@ -131,7 +135,9 @@ def _unknown(key: str, path: tuple[str, ...]) -> str:
     where = f"[{'.'.join(path)}]" if path else "the top of the file"
     homes = [table for table, keys in KNOWN.items() if key in keys and len(table) < 2]
     if homes and len(homes) <= 2:
-        home = " or ".join(f"[{table[0]}]" if table else "the top of the file, above the first [table]" for table in homes)
+        home = " or ".join(
+            f"[{table[0]}]" if table else "the top of the file, above the first [table]" for table in homes
+        )
         return f"is not a key of {where}: it belongs in {home}"
     near = nearest(key, KNOWN[path])
     if near:
@@ -146,7 +152,9 @@ def _satellite(table: dict[str, Any], side: str, prepared: Prepared) -> dict[str
     if isinstance(table.get("beam"), dict):
         prepared._single.add((side, "beam"))
     if "carrier" in table and not isinstance(table["carrier"], dict | list):
-        prepared.faults.append(((side, "carrier"), f"{shown(table['carrier'])} is not a table: give keys of a carrier"))
+        prepared.faults.append(
+            ((side, "carrier"), f"{shown(table['carrier'])} is not a table: give keys of a carrier")
+        )
     return satellite
 
 

@@ -26,7 +26,9 @@ def _weekdays(value: object) -> tuple[str, ...]:
         whole_name = next((name for name in WEEKDAYS if lower in (name, name[:3])), None)
         if whole_name is None:
             near = nearest(lower, WEEKDAYS)
-            raise refuse(f"{shown(word)} is not a weekday: {rule}" + (f'; did you mean "{near}"?' if near else ""))
+            raise refuse(
+                f"{shown(word)} is not a weekday: {rule}" + (f'; did you mean "{near}"?' if near else "")
+            )
         found.append(whole_name)
     return tuple(name for name in WEEKDAYS if name in found)
 

@@ -31,7 +31,9 @@ def _guess_share(value: float) -> str | None:
 
 def _guess_figure(value: float) -> str | None:
     """Explain a noise figure that was given as a temperature."""
-    return "if that is a noise temperature T in K, the figure is 10·log10(1 + T/290) dB" if value > 20 else None
+    return (
+        "if that is a noise temperature T in K, the figure is 10·log10(1 + T/290) dB" if value > 20 else None
+    )
 
 
 def _guess_availability(value: float) -> str | None:
@@ -47,12 +49,12 @@ class Terminal(Table):
     """Receiving terminals; a site list may give any of these for each site."""
 
     dish_m: Annotated[float, number("a diameter in metres", low=0.1, high=32, guess=_guess_metres)] = 0.9
-    efficiency: Annotated[
-        float, number("an efficiency", low=0, above=True, high=1, guess=_guess_share)
-    ] = 0.65
-    noise_figure_db: Annotated[
-        float, number("a noise figure in dB", low=0, high=20, guess=_guess_figure)
-    ] = 0.8
+    efficiency: Annotated[float, number("an efficiency", low=0, above=True, high=1, guess=_guess_share)] = (
+        0.65
+    )
+    noise_figure_db: Annotated[float, number("a noise figure in dB", low=0, high=20, guess=_guess_figure)] = (
+        0.8
+    )
     feed_loss_db: Loss = 0.0
     radome_loss_db: Loss = 0.0
     ground_noise_k: Annotated[float, number("a noise temperature in K", low=0, high=300)] = 10.0
@@ -65,9 +67,10 @@ class Terminal(Table):
     ports: Annotated[int, whole("the number of ports led out", low=1, high=2)] = 1
     mount: Annotated[Literal["azel"], choice("mount", "azel", refused={"polar": _AZEL_ONLY})] = "azel"
     transmits: Annotated[bool, yes_no("the terminals transmit")] = False
-    receive_mask: Annotated[
-        Literal["BO.1213", "S.465", "S.580"], choice("receive mask", "BO.1213", "S.465", "S.580")
-    ] | None = None
+    receive_mask: (
+        Annotated[Literal["BO.1213", "S.465", "S.580"], choice("receive mask", "BO.1213", "S.465", "S.580")]
+        | None
+    ) = None
 
 
 RESERVED_COLUMNS: tuple[str, ...] = (
@@ -100,11 +103,13 @@ def _four_edges(value: object) -> tuple[float, float, float, float]:
     return west, south, east, north
 
 
-def _crs(value: object, *, metres: bool) -> str:
-    """Check a coordinate reference system by name; with ``metres``, one in which a step can be given."""
-    example = '"EPSG:32720"' if metres else '"EPSG:4326"'
+def _crs(value: object, *, projected: bool) -> str:
+    """Check a coordinate reference system by name; with ``projected``, one of a plane."""
+    example = '"EPSG:32720"' if projected else '"EPSG:4326"'
     if not isinstance(value, str) or not value.strip():
-        raise refuse(f"{shown(value)} is not the name of a coordinate reference system: give one such as {example}")
+        raise refuse(
+            f"{shown(value)} is not the name of a coordinate reference system: give one such as {example}"
+        )
     # Slow to import, and only some scenarios have one.
     from pyproj import CRS
     from pyproj.exceptions import CRSError
@@ -115,9 +120,9 @@ def _crs(value: object, *, metres: bool) -> str:
         raise refuse(
             f"{shown(value)} is not a known coordinate reference system: give one such as {example}"
         ) from error
-    if metres and not (system.is_projected and system.axis_info[0].unit_name in ("metre", "meter")):
+    if projected and not system.is_projected:
         raise refuse(
-            f"{shown(value)} is not a projected system in metres: give one such as {example}, "
+            f"{shown(value)} is not a projected system: give one such as {example}, "
             "or leave crs out and give step_deg"
         )
     return value
@@ -129,7 +134,7 @@ class Region(Table):
     bounds_deg: Annotated[tuple[float, float, float, float], BeforeValidator(_four_edges)] | None = None
     outline: Annotated[Path, existing("a vector file with the region's outline")] | None = None
     step_deg: Annotated[float, number("the size of a cell in degrees", low=1e-5, high=30)] | None = None
-    crs: Annotated[str, BeforeValidator(lambda value: _crs(value, metres=True))] | None = None
+    crs: Annotated[str, BeforeValidator(lambda value: _crs(value, projected=True))] | None = None
     step_m: Annotated[float, number("the size of a cell in metres", low=0.1, high=3e6)] | None = None
 
 
@@ -155,9 +160,11 @@ def _columns(value: object) -> dict[str, str]:
 class SitesTable(Table):
     """The site list's file, and how to read it where its column names or coordinates differ."""
 
-    file: Annotated[Path, existing("the site list", optional_when="sites_may_be_missing")]
+    file: Annotated[Path, existing("the site list", optional_when="sites_may_be_missing")] = Field(
+        description='the path of the site list, such as "sites.csv"'
+    )
     columns: Annotated[dict[str, str], BeforeValidator(_columns)] = Field(default_factory=dict)
-    crs: Annotated[str, BeforeValidator(lambda value: _crs(value, metres=False))] | None = None
+    crs: Annotated[str, BeforeValidator(lambda value: _crs(value, projected=False))] | None = None
     layer: Annotated[str, text("the name of a layer of the file")] | None = None
 
 
@@ -173,7 +180,9 @@ class Weather(Table):
 class Terrain(Table):
     """A digital elevation model: a raster, a virtual raster or a folder of rasters."""
 
-    dem: Annotated[Path, existing("an elevation raster or a folder of them", folder_too=True)]
+    dem: Annotated[Path, existing("an elevation raster or a folder of them", folder_too=True)] = Field(
+        description="the path of an elevation raster or a folder of them"
+    )
     unit: Annotated[Literal["m", "ft"], choice("unit of height", "m", "ft")] = "m"
     clutter: Annotated[Path, existing("a raster of clutter heights", folder_too=True)] | None = None
     antenna_height_m: Annotated[float, number("a height above ground in metres", low=0, high=500)] = 0.0

@@ -14,11 +14,11 @@ _ASSIGNMENT: Final = re.compile(rf"[ \t]*({_KEY})[ \t]*=")
 
 
 class LineIndex:
-    """Lines of headers and keys of a TOML text; keys within inline tables count as their parent's line.
+    r"""Lines of headers and keys of a TOML text; keys within inline tables count as their parent's line.
 
     Examples
     --------
-    >>> LineIndex("[a]\\nb = { c = 1 }").line(("a", "b", "c"))
+    >>> LineIndex("[a]\nb = { c = 1 }").line(("a", "b", "c"))
     2
     """
 
@@ -31,10 +31,10 @@ class LineIndex:
             if not state.inside:
                 if header := _HEADER.match(line):
                     table = self._enter(_split(header[2]), several=header[1] == "[[")
-                    self._lines.setdefault(table, number)
+                    self._note(table, number)
                     continue
                 if assignment := _ASSIGNMENT.match(line):
-                    self._lines.setdefault(table + _split(assignment[1]), number)
+                    self._note(table + _split(assignment[1]), number)
                     line = line[assignment.end() :]
             state.read(line)
 
@@ -44,6 +44,12 @@ class LineIndex:
             if loc[:end] in self._lines:
                 return self._lines[loc[:end]]
         return None
+
+    def _note(self, place: Loc, number: int) -> None:
+        """Keep the line of a place, and of tables around it that have no header of their own."""
+        self._lines[place] = number
+        for end in range(1, len(place)):
+            self._lines.setdefault(place[:end], number)
 
     def _enter(self, names: Loc, *, several: bool) -> Loc:
         """Return the place of a header's table, with the index within each array of tables on the way."""

@@ -35,6 +35,9 @@ PARTS: Final[dict[str, str]] = {
 _SAME_SLOT_DEG: Final = 1e-9
 
 
+_CARRIER: Final = "polarisation, frequency_ghz, symbol_rate_mbaud and modcod or required_es_n0_db"
+
+
 class Scenario(Table):
     """A validated scenario: nothing in it needs another check. Small, frozen and picklable.
 
@@ -49,13 +52,11 @@ class Scenario(Table):
     overlap_hours: Annotated[float, number("hours", low=0, high=87_660)] = 0.0
     outgoing: Satellite = Field(description="the satellite in service, with longitude_deg and an EIRP")
     incoming: Satellite = Field(description="the satellite that takes over, with longitude_deg and an EIRP")
-    carriers_before: tuple[Carrier, ...] = Field(min_length=1)
-    carriers_after: tuple[Carrier, ...] = Field(min_length=1)
+    carriers_before: tuple[Carrier, ...] = Field(description=_CARRIER)
+    carriers_after: tuple[Carrier, ...] = Field(description=_CARRIER)
     terminal: Terminal = Terminal()
     region: Region | None = None
-    lowest_elevation_deg: Annotated[
-        float, number("an elevation in degrees", low=0, high=89)
-    ] = 5.0
+    lowest_elevation_deg: Annotated[float, number("an elevation in degrees", low=0, high=89)] = 5.0
     sites: SitesTable | None = None
     weather: Weather | None = None
     terrain: Terrain | None = None
@@ -88,7 +89,8 @@ class Scenario(Table):
         InputError
             A file can no longer be read.
         """
-        return checksums.of_files(self, self.path.parent)
+        may_be_missing = () if self.sites is None else (self.sites.file,)
+        return checksums.of_files(self, self.path.parent, may_be_missing=may_be_missing)
 
     @cached_property
     def digest(self) -> str:

@@ -1,4 +1,4 @@
-"""Carriers of both moments out of [[carrier]] and the satellites' own [outgoing.carrier], [incoming.carrier]."""
+"""Carriers of both moments: those of ``carrier``, with each satellite's own keys put over them."""
 
 from __future__ import annotations
 
@@ -35,14 +35,18 @@ def merge(document: dict[str, Any], side: str) -> Merged:
     for place, table in entries(document.get("carrier"), ("carrier",)):
         plain = dict(table) if isinstance(table, dict) else table
         merged.tables.append(plain)
-        merged.places.append({"": place} | {key: (*place, key) for key in plain} if plain is not table else {"": place})
+        merged.places.append(
+            {"": place} | {key: (*place, key) for key in plain} if plain is not table else {"": place}
+        )
     names = _name(merged)
     satellite = document.get(side)
     given = satellite.get("carrier") if isinstance(satellite, dict) else None
     overrides = entries(given, (side, "carrier"))
     merged.faults += _doubled(overrides)
     # One without a name is for all carriers and gives way to one with a name.
-    for place, override in sorted(overrides, key=lambda entry: isinstance(entry[1], dict) and "name" in entry[1]):
+    for place, override in sorted(
+        overrides, key=lambda entry: isinstance(entry[1], dict) and "name" in entry[1]
+    ):
         if not isinstance(override, dict):
             merged.faults.append((place, f"{shown(override)} is not a table: give keys of a carrier"))
             continue
@@ -62,7 +66,9 @@ def _name(merged: Merged) -> list[str]:
     for table, places in zip(merged.tables, merged.places, strict=True):
         name = table.get("name") if isinstance(table, dict) else None
         if isinstance(table, dict) and "name" not in table:
-            merged.faults.append((places[""], 'has no name: with several carriers each needs one, name = "..."'))
+            merged.faults.append(
+                (places[""], 'has no name: with several carriers each needs one, name = "..."')
+            )
             table["name"] = f"{_ONLY_NAME} {len(names) + 1}"
         elif isinstance(name, str) and name in names:
             merged.faults.append((places["name"], f"{shown(name)} is the name of two carriers: rename one"))
@@ -81,7 +87,9 @@ def _chosen(override: dict[str, Any], names: list[str], place: Loc, merged: Merg
     if names == [_ONLY_NAME]:
         remedy = "the only [carrier] has no name, so leave the name out"
     else:
-        remedy = f'did you mean "{near}"?' if near else "known are " + ", ".join(shown(known) for known in names)
+        remedy = (
+            f'did you mean "{near}"?' if near else "known are " + ", ".join(shown(known) for known in names)
+        )
     if names:
         merged.faults.append(((*place, "name"), f"{shown(name)} is not the name of a carrier: {remedy}"))
     return []
@@ -95,7 +103,9 @@ def _doubled(overrides: list[tuple[Loc, Any]]) -> list[tuple[Loc, str]]:
         for key, value in override.items() if isinstance(override, dict) else ():
             mark = (str(override.get("name", "")), key)
             if key != "name" and mark in taken:
-                message = f"{shown(value)}: another override of the same carrier gives {key} too: give it once"
+                message = (
+                    f"{shown(value)}: another override of the same carrier gives {key} too: give it once"
+                )
                 faults.append(((*place, key), message))
             taken.add(mark)
     return faults

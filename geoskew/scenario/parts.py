@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Annotated, TypeAlias
 
-from pydantic import BaseModel, ConfigDict
+from pydantic import BaseModel, ConfigDict, Field
 
 from geoskew.scenario.values import number
 
@@ -34,7 +34,9 @@ Latitude: TypeAlias = Annotated[float, number("degrees north, negative in the so
 SubSatelliteLatitude: TypeAlias = Annotated[
     float, number("the satellite's latitude at that moment, degrees north", low=-20, high=20)
 ]
-Tilt: TypeAlias = Annotated[float, number("the turn of the satellite's polarisation, degrees", low=-180, high=180)]
+Tilt: TypeAlias = Annotated[
+    float, number("the turn of the satellite's polarisation, degrees", low=-180, high=180)
+]
 Power: TypeAlias = Annotated[float, number("a power in dBW", low=-30, high=MOST_DBW, guess=_guess_dbm)]
 Isolation: TypeAlias = Annotated[float, number("a cross-polar isolation in dB", low=0, high=100)]
 Offset: TypeAlias = Annotated[float, number("a difference of powers in dB", low=-60, high=60)]
@@ -45,5 +47,5 @@ Ratio: TypeAlias = Annotated[float, number("a ratio of powers in dB", low=-20, h
 class LonLat(Table):
     """A place on the Earth, degrees."""
 
-    lon_deg: Longitude
-    lat_deg: Latitude
+    lon_deg: Longitude = Field(description="degrees east")
+    lat_deg: Latitude = Field(description="degrees north")

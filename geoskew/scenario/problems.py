@@ -18,7 +18,12 @@ from geoskew.scenario.values import shown
 
 
 def collect(
-    faults: Iterable[tuple[Loc, str]], details: Iterable[ErrorDetails], prepared: Prepared, *, path: Path, lines: LineIndex
+    faults: Iterable[tuple[Loc, str]],
+    details: Iterable[ErrorDetails],
+    prepared: Prepared,
+    *,
+    path: Path,
+    lines: LineIndex,
 ) -> list[Problem]:
     """Return all problems in the order of the file, each once.
 
@@ -33,11 +38,16 @@ def collect(
     for detail in details:
         place = prepared.place(detail["loc"])
         if detail["type"] == "missing" and (len(place) == 1 and place in KNOWN):
-            place, message = place, f"the table is missing: add {_header(place[0])} with {_description(detail['loc'])}"
+            place, message = (
+                place,
+                f"the table is missing: add {_header(place[0])} with {_description(detail['loc'])}",
+            )
         else:
             message = _message(detail)
         found.append((place, message))
-    problems = {Problem(message, path, lines.line(place), written(place) or None): None for place, message in found}
+    problems = {
+        Problem(message, path, lines.line(place), written(place) or None): None for place, message in found
+    }
     return sorted(problems, key=lambda problem: problem.line or 0)
 
 

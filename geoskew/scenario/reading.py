@@ -57,7 +57,11 @@ def load(path: str | Path, *, sites_may_be_missing: bool = False) -> Scenario:
     except ValueError as error:
         raise InputError(_syntax_problem(error, content, file)) from error
     if not document:
-        raise InputError(Problem("is empty: a scenario needs at least two satellites, a carrier, and a region or sites", file))
+        raise InputError(
+            Problem(
+                "is empty: a scenario needs at least two satellites, a carrier, and a region or sites", file
+            )
+        )
     return _scenario(document, file, LineIndex(content), sites_may_be_missing=sites_may_be_missing)
 
 
@@ -71,15 +75,21 @@ def from_dict(
     InputError
         Carries every problem found; lines are not known.
     """
-    return _scenario(dict(document), Path(path).absolute(), LineIndex(), sites_may_be_missing=sites_may_be_missing)
+    return _scenario(
+        dict(document), Path(path).absolute(), LineIndex(), sites_may_be_missing=sites_may_be_missing
+    )
 
 
-def _scenario(document: dict[str, Any], path: Path, lines: LineIndex, *, sites_may_be_missing: bool) -> Scenario:
+def _scenario(
+    document: dict[str, Any], path: Path, lines: LineIndex, *, sites_may_be_missing: bool
+) -> Scenario:
     """Return the scenario of a parsed document, or raise with all its problems."""
     prepared = prepare(document)
     prepared.values.setdefault("title", path.stem)
     prepared.values["path"] = path
-    carriers = {moment: value for moment in _MOMENTS if isinstance(value := prepared.values.get(moment), list)}
+    carriers = {
+        moment: value for moment in _MOMENTS if isinstance(value := prepared.values.get(moment), list)
+    }
     faults = [*prepared.faults, *all_faults(document, carriers)]
     context = {"folder": path.parent, "sites_may_be_missing": sites_may_be_missing}
     try:
@@ -111,7 +121,9 @@ def _text(path: Path) -> str:
         raise InputError(Problem(f"there is no such scenario file: {remedy}", file=path)) from error
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or str(error)
-        raise InputError(Problem(f"cannot be read: {reason}; check the path and its permissions", file=path)) from error
+        raise InputError(
+            Problem(f"cannot be read: {reason}; check the path and its permissions", file=path)
+        ) from error
     try:
         return content.decode("utf-8-sig")
     except UnicodeDecodeError as error:
@@ -121,7 +133,7 @@ def _text(path: Path) -> str:
 
 
 def _syntax_problem(error: ValueError, content: str, path: Path) -> Problem:
-    """Return the problem of a file that is not TOML, with line and column and a hint from the line's looks."""
+    """Return the problem of a file that is not TOML, with its place and a hint from the line's looks."""
     found = re.search(r"^(.*?) \(at line (\d+), column (\d+)\)$", str(error), re.DOTALL)
     lines = content.splitlines()
     if found:

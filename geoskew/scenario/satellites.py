@@ -9,8 +9,8 @@ from pydantic import BeforeValidator, Field
 
 from geoskew.scenario.parts import (
     Isolation,
-    LonLat,
     Longitude,
+    LonLat,
     Offset,
     Power,
     SubSatelliteLatitude,
@@ -28,21 +28,26 @@ EIRP_KINDS = ("eirp_dbw", "eirp_contours", "eirp_raster", "beam")
 class EirpContours(Table):
     """Published contours of EIRP: a vector file and the column that holds each contour's level, dBW."""
 
-    file: Annotated[Path, existing("a vector file of contours")]
-    field: Annotated[str, text("the name of the column that holds the level in dBW")]
+    file: Annotated[Path, existing("a vector file of contours")] = Field(
+        description="the path of a vector file of contours"
+    )
+    field: Annotated[str, text("the name of the column that holds the level in dBW")] = Field(
+        description="the name of the column that holds the level in dBW"
+    )
     peak_dbw: Power | None = None
 
 
 class Beam(Table):
-    """An elliptical beam: widths are full half-power widths, the orientation is counter-clockwise from the
-    equatorial plane's direction as seen from the satellite."""
+    """An elliptical beam around ``aim``, else around the satellite's own aim.
+
+    Widths are full half-power widths; the orientation is that of the major axis, counter-clockwise from
+    the equatorial plane's direction as seen from the satellite.
+    """
 
     peak_dbw: Power = Field(description="the EIRP at the beam's axis in dBW")
     major_deg: _BeamWidth = Field(description="the larger half-power width in degrees")
     minor_deg: _BeamWidth = Field(description="the smaller half-power width in degrees")
-    orientation_deg: Annotated[
-        float, number("the turn of the major axis, degrees", low=-180, high=180)
-    ] = 0.0
+    orientation_deg: Annotated[float, number("the turn of the major axis, degrees", low=-180, high=180)] = 0.0
     aim: LonLat | None = None
     pattern: Annotated[
         Literal["gaussian", "appendix-30", "fast-roll-off"],
@@ -88,9 +93,7 @@ class Neighbour(Table):
     tilt_deg: Tilt = 0.0
     polarisation: Polarisation = Field(description='the polarisation that it sends: "V", "H", "L" or "R"')
     isolation_db: Isolation = 30.0
-    when: Annotated[
-        Literal["both", "before", "after"], choice("moment", "both", "before", "after")
-    ] = "both"
+    when: Annotated[Literal["both", "before", "after"], choice("moment", "both", "before", "after")] = "both"
 
 
 def check_axes(beam: dict[str, Any]) -> str | None:

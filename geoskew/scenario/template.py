@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Final
 
-TEMPLATE: Final = '''\
+TEMPLATE: Final = """\
 # A changeover study: a network of fixed dishes moves from one geostationary satellite to another.
 # Lines that begin with "#" and a space explain. Lines that begin with "#" and a word are keys left out,
 # with their default or an example: remove the "#" to use one. Times are in UTC, angles in degrees,
@@ -175,4 +175,4 @@ step_deg = 0.25
 #query = "select id, lat, lon from sites"
 #id = "id"
 #table = "assessed_sites"
-'''
+"""

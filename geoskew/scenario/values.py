@@ -89,7 +89,9 @@ def text(what: str, *, without: str = "") -> BeforeValidator:
         line = _one_line(value, what)
         for sign in without:
             if sign in line:
-                raise refuse(f'{shown(line)} holds "{sign}", which parts entries in a site list: leave it out')
+                raise refuse(
+                    f'{shown(line)} holds "{sign}", which parts entries in a site list: leave it out'
+                )
         return line
 
     return BeforeValidator(check)
@@ -106,7 +108,9 @@ def choice(what: str, *allowed: str, refused: dict[str, str] | None = None) -> B
             raise refuse(f"{shown(value)}: {refused[value]}")
         near = nearest(value, allowed) if isinstance(value, str) else None
         hint = f'; did you mean "{near}"?' if near and len(allowed) > 1 else ""
-        raise refuse(f"{shown(value)} is not a known {what}: give {'one of ' * (len(allowed) > 1)}{listed}{hint}")
+        raise refuse(
+            f"{shown(value)} is not a known {what}: give {'one of ' * (len(allowed) > 1)}{listed}{hint}"
+        )
 
     return BeforeValidator(check)
 
@@ -137,7 +141,9 @@ def existing(what: str, *, folder_too: bool = False, optional_when: str | None =
         try:
             _check_readable(path, given, what, folder_too=folder_too)
         except OSError as error:
-            raise refuse(f"{shown(given)} cannot be reached ({what}): {error.strerror}; mend the path") from error
+            raise refuse(
+                f"{shown(given)} cannot be reached ({what}): {error.strerror}; mend the path"
+            ) from error
         return path
 
     return BeforeValidator(check)
@@ -149,7 +155,9 @@ def moment(value: object) -> datetime:
     if isinstance(value, str):
         raise refuse(f"{shown(value)} is text, not a date and time: {example}")
     if isinstance(value, date) and not isinstance(value, datetime):
-        raise refuse(f"{value.isoformat()} has no time of day: {value.isoformat()}T03:00:00Z is 03:00 UTC on it")
+        raise refuse(
+            f"{value.isoformat()} has no time of day: {value.isoformat()}T03:00:00Z is 03:00 UTC on it"
+        )
     if not isinstance(value, datetime):
         raise refuse(f"{shown(value)} is not a date and time: {example}")
     if value.year not in _YEARS:
@@ -221,7 +229,9 @@ def _absolute(given: str, folder: Path) -> Path:
     try:
         path = Path(given).expanduser()
     except RuntimeError as error:
-        raise refuse(f"{shown(given)}: the home folder in it is not known here; write the path in full") from error
+        raise refuse(
+            f"{shown(given)}: the home folder in it is not known here; write the path in full"
+        ) from error
     return Path(os.path.normpath(folder / path))
 
 
@@ -229,5 +239,5 @@ def _where(path: Path) -> str:
     """Say what was looked for, and which file nearby has a similar name."""
     if not path.parent.is_dir():
         return f"there is no folder {path.parent}"
-    near = nearest(path.name, (entry.name for entry in path.parent.iterdir()))
+    near = nearest(path.name, (entry.name for entry in path.parent.iterdir()), cutoff=0.8)
     return f"looked in {path.parent}" + (f'; did you mean "{near}"?' if near else "; mend the path")
