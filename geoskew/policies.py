@@ -23,6 +23,9 @@ HALVINGS: Final = 44
 # Two settings whose turns differ by less than this are the same turn to either side.
 TIE_DEG: Final = 1e-6
 
+# Below the level found the arcs overlap by more than rounding: 1e-9 dB is some 1e-9° of a curve's flank.
+BACK_OFF_DB: Final = 1e-9
+
 # The least excess worth telling apart; it bounds the search from below, not the results.
 LOWEST_EXCESS_DB: Final = -200.0
 
@@ -92,11 +95,11 @@ def _meet(middles: Sequence[Array], halves: Sequence[Array]) -> NDArray[np.bool_
 def _search(curves: Sequence[Curve], shape: tuple[int, ...]) -> tuple[Array, Array]:
     """The greatest level of excess at which all arcs still meet, bracketed: (met, not met)."""
     bound = [curve.response.best_bound() - curve.held_to for curve in curves]
-    high = np.broadcast_to(np.minimum.reduce(np.broadcast_arrays(*bound)), shape) + 1e-9
+    high = np.broadcast_to(np.minimum.reduce(np.broadcast_arrays(*bound)), shape) + BACK_OFF_DB
     starts = [np.broadcast_to(least_excess(curves, curve.response.suits), shape) for curve in curves]
     low = np.maximum(np.maximum.reduce(starts), LOWEST_EXCESS_DB)
     # The best of the curves' own settings is reached; a hair below it rounding cannot unmake it.
-    low = low - 1e-9
+    low = low - BACK_OFF_DB
     for _ in range(HALVINGS):
         middle = 0.5 * (low + high)
         met = _meet(*_arcs(curves, middle))
@@ -154,7 +157,7 @@ def shared_setting(curves: Sequence[Curve], present: ArrayLike) -> Shared:
         *(np.broadcast_shapes(c.response.suits.shape, c.response.noise.shape, c.held_to.shape) for c in curves),
     )
     low, _ = _search(curves, shape)
-    turn = _place_in_arcs(curves, low, np.broadcast_to(present, shape))
+    turn = _place_in_arcs(curves, low - BACK_OFF_DB, np.broadcast_to(present, shape))
     excess = least_excess(curves, present + turn)
     window_low, window_high = _window(curves, present, turn)
     # The setting lies in the window exactly when a window exists.
