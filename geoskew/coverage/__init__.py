@@ -1,0 +1,1 @@
+"""EIRP towards a place: elliptical beams, published contours, rasters. Arrays in, arrays out."""
