@@ -1,0 +1,200 @@
+"""The numbered steps of a card, its cautions, and what the crew writes back.
+
+Every step that turns something names where to stand and which way to turn.
+"""
+
+from __future__ import annotations
+
+import math
+from typing import Final
+
+from geoskew.outputs.cards.facts import CardFacts
+from geoskew.outputs.cards.site import Job
+from geoskew.outputs.cards.turning import Way
+from geoskew.outputs.cards.words import (
+    Line,
+    Number,
+    Part,
+    decibels,
+    degrees,
+    fold,
+    lean,
+    marks_in_words,
+    sense_from_behind,
+    sense_from_front,
+    size,
+)
+
+# Common practice, no source: the usual cautions of work on fixed dishes.
+CAUTIONS: Final = (
+    "Height: work from a secured ladder or platform, with a second person; wear fall protection on roofs.",
+    "Look for overhead lines before you raise a ladder; keep well clear of them.",
+    "No work in strong wind, rain, frost or when thunder can be heard: a dish on a mast draws lightning.",
+    "Never stand in front of a transmitting dish. Power the transmitter off, lock it off, and check.",
+    "Local codes, the owner's rules and the judgement of licensed people go before this card.",
+)
+TRANSMITS: Final = (
+    "THIS DISH TRANSMITS. Power off and lock off before anyone goes in front of it; agree the "
+    "polarisation with the satellite's operations desk before power returns."
+)
+
+WRITE_BACK: Final = (
+    "Date and time",
+    "Setting found (scale / inclinometer)",
+    "Setting left (scale / inclinometer)",
+    "Signal before, dB",
+    "Signal after, dB",
+    "Port used",
+    "Remarks",
+    "Name",
+)
+
+
+def steps(job: Job, facts: CardFacts) -> tuple[Line, ...]:
+    """All steps of one card in their order."""
+    way = job.turning.way
+    if way is None:
+        why = job.turning.obstacle or "The table holds no turn for this site."
+        return ((why, " Do not force it. Leave everything as it is and report to the planner."),)
+    lines: list[Line] = [_before_touching(job), _when(job, facts)]
+    if job.turning.obstacle:
+        lines.append((f"{job.turning.obstacle} Take this way instead:",))
+    lines += _turn(job, way)
+    lines += _check(job, way)
+    if job.action == "re-aim" or (job.action == "turn-at-changeover" and not facts.same_slot):
+        lines.append(_move_dish(job, facts))
+    else:
+        lines.append(("Tighten the clamp. The dish stays where it is: do not move azimuth or elevation.",))
+    lines.append(("Read the signal, compare it with the figures below, fill in what to write back.",))
+    return tuple(lines)
+
+
+def _before_touching(job: Job) -> Line:
+    parts: list[Part] = ["Before touching anything write down the scale reading and the signal. "]
+    where = "Seen from BEHIND the dish (looking towards the satellite) the feed's V mark should now stand "
+    parts += [where, *_leaning(job.present, "present", from_behind=True), "."]
+    if job.scale.is_known and job.turning.way is not None:
+        reading = job.scale.reading(job.turning.way.present)
+        parts += [" Scale: ", degrees("scale_now", reading, signed=True), "."]
+    parts.append(" If it does not, measure it, turn to the TARGET and not by the turn, and report it.")
+    return tuple(parts)
+
+
+def _when(job: Job, facts: CardFacts) -> Line:
+    moment = f"{facts.changeover:%d %b %Y %H:%M} UTC"
+    if job.action == "preset":
+        return (f"Do this AHEAD of the changeover ({moment}); one visit serves both satellites.",)
+    if facts.overlap_hours > 0:
+        hours = f"{facts.overlap_hours:g} hours"
+        return (f"Do this AT the changeover ({moment}), within the {hours} in which both satellites work.",)
+    return (f"Do this AT the changeover ({moment}), once the new satellite carries the traffic, not before.",)
+
+
+def _turn(job: Job, way: Way) -> list[Line]:
+    lines: list[Line] = []
+    if way.swap:
+        lines.append(("Exchange the two leads: what was on the V port goes to the H port, and back.",))
+    if abs(way.turn) < 0.05:
+        lines.append(("The feed is not turned: it already stands at the target.",))
+        return lines
+    field = job.turn_field if job.turning.is_direct else "turn_to_make"
+    lines.append(
+        (
+            "Stand BEHIND the dish, looking towards the satellite. Loosen the feed's clamp and turn it ",
+            size(field, way.turn),
+            f" {sense_from_behind(way.turn)}: ",
+            Number("marks", abs(way.turn) / job.scale.step, marks_in_words(way.turn / job.scale.step)),
+            f" of the scale ({job.scale.step:g}° a mark). "
+            f"Standing IN FRONT of the dish, looking into it, the same turn goes {sense_from_front(way.turn)}.",
+        )
+    )
+    shorter = job.turning.shorter
+    if shorter is not None:
+        lines.append(
+            (
+                "Or, shorter: exchange the leads of the two ports and, from BEHIND, turn only ",
+                size("turn_with_swap", shorter.turn),
+                f" {sense_from_behind(shorter.turn)} (from IN FRONT {sense_from_front(shorter.turn)}). "
+                "Then the V mark stands ",
+                *_leaning(fold(shorter.target), "target_with_swap", from_behind=True),
+                " seen from behind. One of the two, never both.",
+            )
+        )
+    return lines
+
+
+def _check(job: Job, way: Way) -> list[Line]:
+    goal = fold(way.target)
+    field = job.goal_field if job.turning.is_direct else "target_to_reach"
+    parts: list[Part] = [
+        "Inclinometer in the plane of the feed's face, against the vertical: the V mark must stand ",
+        *_leaning(goal, field, from_behind=True),
+        " seen from BEHIND, ",
+        lean(goal, from_behind=False),
+        " seen from IN FRONT.",
+    ]
+    if abs(way.turn) >= 0.05:
+        wrong = fold(way.present - way.turn)
+        parts += [
+            " If it stands ",
+            *_leaning(wrong, "wrong_way_setting", from_behind=True),
+            " seen from behind, it was turned the WRONG WAY: go back by twice the turn.",
+        ]
+    lines: list[Line] = [tuple(parts)]
+    if job.scale.is_known:
+        reading = degrees("scale_target", job.scale.reading(way.target), signed=True)
+        lines.append(("The scale then shows ", reading, "."))
+    if job.window is not None and job.turning.is_direct:
+        lines.append(_tolerance(job, way))
+    return lines
+
+
+def _tolerance(job: Job, way: Way) -> Line:
+    assert job.window is not None
+    low, high = job.window
+    parts: list[Part] = []
+    if job.every_setting_does:
+        parts.append("Every setting keeps what is asked; the target is the best one.")
+    else:
+        from_to = ("Any turn from ", degrees("window_low", low, signed=True), " to ")
+        parts += [*from_to, degrees("window_high", high, signed=True)]
+        parts.append(" keeps what is asked (plus is CLOCKWISE from BEHIND); aim for the target.")
+    before, after = "margin_marked_before", "margin_marked_after"
+    if job.row.has(before) and job.row.has(after):
+        mark = job.scale.nearest_mark(way.target)
+        shown = job.scale.reading(mark) if job.scale.is_known else fold(mark)
+        what = "scale " if job.scale.is_known else "a setting of "
+        parts += [f" On the nearest whole mark ({what}", degrees("nearest_mark", shown, signed=True), ") "]
+        parts += ["the margin is ", decibels(before, job.row.number(before)), " before and "]
+        parts += [decibels(after, job.row.number(after)), " after the changeover."]
+    return tuple(parts)
+
+
+def _move_dish(job: Job, facts: CardFacts) -> Line:
+    row = job.row
+    parts: list[Part] = ["Move the DISH to the new satellite"]
+    if row.has("azimuth_after") and row.has("azimuth_before"):
+        turn = (row.number("azimuth_after") - row.number("azimuth_before") + 180.0) % 360.0 - 180.0
+        lift = row.number("elevation_after") - row.number("elevation_before")
+        side = "RIGHT" if turn > 0 else "LEFT"
+        parts += [
+            ": standing BEHIND it, swing it ",
+            size("azimuth_move", turn),
+            f" to the {side} ({'LEFT' if turn > 0 else 'RIGHT'} when IN FRONT) to azimuth ",
+            degrees("azimuth_after", row.number("azimuth_after")),
+            f" from true north, and {'raise' if lift > 0 else 'lower'} it ",
+            size("elevation_move", lift),
+            " to elevation ",
+            degrees("elevation_after", row.number("elevation_after")),
+        ]
+    parts.append(". Peak it on the signal, check the feed's setting once more, and tighten everything.")
+    return tuple(parts)
+
+
+def _leaning(setting: float, field: str, *, from_behind: bool) -> tuple[Part, ...]:
+    """A setting against the vertical, in words."""
+    folded = fold(setting)
+    side = lean(folded, from_behind=from_behind)
+    if side == "upright" or not math.isfinite(folded):
+        return (Number(field, folded, side),)
+    return (size(field, folded), f" {side}")
