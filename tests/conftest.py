@@ -1,0 +1,119 @@
+"""What tests need of the machine, and what happens where it is missing.
+
+A test that needs a browser, a database server or a tool asks for it with one of the fixtures below
+and is skipped, with the reason, where it is not installed. With ``GEOSKEW_REQUIRE_ALL=1`` (set by
+``.ci/run``) every such skip is a failure; only a skip whose reason begins with ``not applicable``
+stays one.
+"""
+
+from __future__ import annotations
+
+import os
+import shutil
+import socket
+import subprocess
+from collections.abc import Callable, Generator, Iterator
+from pathlib import Path
+
+import pytest
+
+REQUIRE_ALL = os.environ.get("GEOSKEW_REQUIRE_ALL", "") not in ("", "0")
+NOT_APPLICABLE = "not applicable"
+# Names that a tool goes by, and folders beside PATH where Debian puts servers.
+OTHER_NAMES = {"chromium": ("chromium", "chromium-browser")}
+SERVER_FOLDERS = sorted(Path("/usr/lib/postgresql").glob("*/bin"), reverse=True)
+
+
+@pytest.hookimpl(wrapper=True)
+def pytest_runtest_makereport(
+    item: pytest.Item, call: pytest.CallInfo[None]
+) -> Generator[None, pytest.TestReport, pytest.TestReport]:
+    """Turn a skip into a failure where everything must be there."""
+    report = yield
+    if REQUIRE_ALL and report.skipped and not hasattr(report, "wasxfail"):
+        reason = str(call.excinfo.value) if call.excinfo else ""
+        if not reason.startswith(NOT_APPLICABLE):
+            report.outcome = "failed"
+            report.longrepr = f"{item.nodeid}: skipped where nothing may be missing: {reason}"
+    return report
+
+
+@pytest.fixture(scope="session")
+def needs_tool() -> Callable[[str], str]:
+    """Give the path of a program by name, or skip: ``chromium = needs_tool("chromium")``."""
+
+    def find(name: str) -> str:
+        for candidate in OTHER_NAMES.get(name, (name,)):
+            folders = os.pathsep.join([os.environ.get("PATH", ""), *map(str, SERVER_FOLDERS)])
+            if found := shutil.which(candidate, path=folders):
+                return found
+        pytest.skip(f"the program {name} is not installed")
+
+    return find
+
+
+@pytest.fixture(scope="session")
+def needs_node_package() -> Callable[[str], Path]:
+    """Give the folder of an npm package, or skip: ``axe = needs_node_package("axe-core")``.
+
+    Packages are looked for in the folder that ``GEOSKEW_NODE_MODULES`` names, else in the checkout's
+    ``node_modules``.
+    """
+
+    def find(name: str) -> Path:
+        default = Path(__file__).resolve().parent.parent / "node_modules"
+        folder = Path(os.environ.get("GEOSKEW_NODE_MODULES") or default) / name
+        if not folder.is_dir():
+            pytest.skip(f"the npm package {name} is not installed in {folder.parent}")
+        return folder
+
+    return find
+
+
+@pytest.fixture(scope="session")
+def postgis_url(needs_tool: Callable[[str], str], tmp_path_factory: pytest.TempPathFactory) -> Iterator[str]:
+    """Address of a private PostGIS database on the loopback interface, gone after the tests; or skip."""
+    initdb, server = needs_tool("initdb"), needs_tool("postgres")
+    control = needs_tool("pg_ctl")
+    if not any(Path("/usr/share/postgresql").glob("*/extension/postgis.control")):
+        pytest.skip("PostGIS is not installed")
+    # The server refuses to run as root: the account that came with it takes over.
+    as_owner = ["runuser", "-u", "postgres", "--"] if os.geteuid() == 0 else []
+    folder = tmp_path_factory.mktemp("postgis")
+    if as_owner:
+        shutil.chown(folder, "postgres")
+        for parent in folder.parents:
+            if parent.owner() == "root" and parent.name.startswith("pytest-"):
+                parent.chmod(0o711)
+    data, port = folder / "data", _free_port()
+    options = f"-p {port} -k {folder} -c listen_addresses=127.0.0.1 -c fsync=off"
+
+    def run(*command: str) -> None:
+        subprocess.run([*as_owner, *command], check=True, capture_output=True, cwd=folder)
+
+    run(initdb, "-D", str(data), "-U", "geoskew", "--auth=trust", "-E", "UTF8", "--locale=C")
+    run(control, "-D", str(data), "-o", options, "-l", str(folder / "log"), "-w", "-p", server, "start")
+    try:
+        psql = needs_tool("psql")
+        run(
+            psql,
+            "-h",
+            "127.0.0.1",
+            "-p",
+            str(port),
+            "-U",
+            "geoskew",
+            "-d",
+            "postgres",
+            "-c",
+            "CREATE EXTENSION postgis",
+        )
+        yield f"postgresql+psycopg://geoskew@127.0.0.1:{port}/postgres"
+    finally:
+        run(control, "-D", str(data), "-m", "immediate", "stop")
+
+
+def _free_port() -> int:
+    with socket.socket() as probe:
+        probe.bind(("127.0.0.1", 0))
+        return int(probe.getsockname()[1])
