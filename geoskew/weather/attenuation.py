@@ -137,8 +137,10 @@ def ladder(
     formula = _PathFormula(climate.frequency_ghz, tuple(float(value) for value in percentages))
     gas, cloud, *rest = in_strips(formula, [np.asarray(array, dtype=np.float64) for array in arrays])
     results = []
+    count = len(rest) // len(percentages)
     for index, percentage in enumerate(percentages):
-        wet, fade, total, absorbed, depolarising = rest[5 * index : 5 * index + 5]
+        wet, fade, total, absorbed, *scaled = rest[count * index : count * (index + 1)]
+        depolarising = scaled[0] if scaled else wet
         results.append(Attenuation(percentage, wet, gas, cloud, fade, total, absorbed, depolarising))
     return tuple(results)
 
@@ -179,17 +181,17 @@ class _PathFormula:
         )
         place = (rate, depth, latitude, elevation, tilt)
         rain_001 = rain.attenuation_001(*place, frequency_ghz=frequency, sine=sine)
-        depolarising = rain_001
-        if LEAST_FREQUENCY_GHZ <= frequency != rain_frequency(frequency):
+        rains_001 = [rain_001]
+        if frequency >= LEAST_FREQUENCY_GHZ and rain_frequency(frequency) != frequency:
             scaled = rain_frequency(frequency)
-            depolarising = rain.attenuation_001(*place, frequency_ghz=scaled, sine=sine)
+            rains_001.append(rain.attenuation_001(*place, frequency_ghz=scaled, sine=sine))
         results = [gas, cloud]
         for percentage in self.percentages:
             fade = deviation * scintillation.time_factor(percentage)
-            rains = [
+            wet_fade, *depolarising = (
                 rain.at_percentage(value, latitude, elevation, percentage=percentage, sine=sine)
-                for value in ([rain_001] if depolarising is rain_001 else [rain_001, depolarising])
-            ]
-            total = combined(gas, rains[0], cloud, fade)
-            results += [rains[0], fade, total, gas + cloud + rains[0], rains[-1]]
+                for value in rains_001
+            )
+            total = combined(gas, wet_fade, cloud, fade)
+            results += [wet_fade, fade, total, gas + cloud + wet_fade, *depolarising]
         return results
