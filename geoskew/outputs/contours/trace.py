@@ -4,10 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, Final
 
 import numpy as np
 from numpy.typing import NDArray
+
+# Each branch traces the levels of an eighth of the period: more would be slower, fewer would lose
+# lines further away from a point about which the angle turns.
+_BRANCHES: Final = 8
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,12 +30,12 @@ def isolines(
     kind: str = "continuous",
     period: float = 0.0,
 ) -> list[Isoline]:
-    """Lines of equal value, larger values on their left, in the order of the levels.
+    """Lines of equal value, larger values on their left, by level.
 
-    An angle that closes on itself is traced level by level on its difference from the level, folded
-    to half a period either way and kept to a quarter: between two neighbours that close, the short
-    way round is the way that the angle goes, and the fold at half a period is never taken for a line.
-    Lines end where an angle turns by a quarter of its period from one cell to the next, as beside the
+    An angle that closes on itself is traced in branches: its difference from the branch's middle, folded
+    to half a period either way and kept to a quarter. Between two neighbours that close, the short way
+    round is the way that the angle goes, and the fold at half a period is never taken for a line.
+    Lines end where an angle turns by a fifth of its period from one cell to the next, as beside the
     sub-satellite point.
 
     Parameters
@@ -49,13 +53,13 @@ def isolines(
     Returns
     -------
     list of Isoline
-        Levels without any line are left out.
+        By level, ascending for angles; levels without any line are left out.
     """
     if min(values.shape) < 2:
         return []
     values, x, y = _ascending(np.asarray(values, dtype=np.float64), x, y)
     if kind == "circular":
-        traced = [(level, _trace_angle(values, x, y, level, period)) for level in levels]
+        traced = _trace_angle(values, x, y, levels, period)
     else:
         generator = _generator(values, x, y)
         traced = [(level, generator.lines(level)) for level in levels]
@@ -83,18 +87,29 @@ def _generator(values: NDArray[np.float64], x: NDArray[np.float64], y: NDArray[n
 
 
 def _trace_angle(
-    values: NDArray[np.float64], x: NDArray[np.float64], y: NDArray[np.float64], level: float, period: float
-) -> list[NDArray[np.float64]]:
-    """Where an angle equals a level."""
-    beyond = np.mod(values - level + period / 2.0, period) - period / 2.0
-    beyond[~(np.abs(beyond) < period / 4.0)] = np.nan
-    rows = np.flatnonzero(~np.isnan(beyond).all(axis=1))
-    columns = np.flatnonzero(~np.isnan(beyond).all(axis=0))
-    if rows.size == 0 or rows[0] == rows[-1] or columns[0] == columns[-1]:
-        return []
-    part = slice(rows[0], rows[-1] + 1), slice(columns[0], columns[-1] + 1)
-    lines: list[NDArray[np.float64]] = _generator(beyond[part], x[part[1]], y[part[0]]).lines(0.0)
-    return lines
+    values: NDArray[np.float64],
+    x: NDArray[np.float64],
+    y: NDArray[np.float64],
+    levels: Sequence[float],
+    period: float,
+) -> list[tuple[float, list[NDArray[np.float64]]]]:
+    """Where an angle equals each of the levels, taken together in branches of the angle."""
+    width = period / _BRANCHES
+    branches: dict[int, list[float]] = {}
+    for level in levels:
+        branches.setdefault(round(level / width), []).append(level)
+    traced = []
+    for branch, near in branches.items():
+        beyond = np.mod(values - branch * width + period / 2.0, period) - period / 2.0
+        beyond[~(np.abs(beyond) < period / 4.0)] = np.nan
+        rows = np.flatnonzero(~np.isnan(beyond).all(axis=1))
+        columns = np.flatnonzero(~np.isnan(beyond).all(axis=0))
+        if rows.size == 0 or rows[0] == rows[-1] or columns[0] == columns[-1]:
+            continue
+        part = slice(rows[0], rows[-1] + 1), slice(columns[0], columns[-1] + 1)
+        generator = _generator(beyond[part], x[part[1]], y[part[0]])
+        traced += [(level, generator.lines(level - branch * width)) for level in near]
+    return sorted(traced, key=lambda pair: pair[0])
 
 
 def _with_length(lines: Sequence[NDArray[np.float64]], tolerance: float) -> tuple[NDArray[np.float64], ...]:
