@@ -126,12 +126,9 @@ def _cut(lines: Sequence[Feature], hull: Any) -> list[Any]:
     """Polygons between contours, the hull and the short ways from cut ends to the hull."""
     import shapely
 
-    ways = []
-    for line in lines:
-        if not line.geometry.is_closed:
-            for end in (shapely.get_point(line.geometry, 0), shapely.get_point(line.geometry, -1)):
-                ways.append(shapely.shortest_line(end, hull.boundary))
-    ways = [way for way in ways if way.length > PRECISION_DEG]
+    cut = [line.geometry for line in lines if not line.geometry.is_closed]
+    ends = [shapely.get_point(line, number) for line in cut for number in (0, -1)]
+    ways = [way for way in shapely.shortest_line(ends, hull.boundary) if way.length > PRECISION_DEG]
     everything = [line.geometry for line in lines] + [hull.boundary, *ways]
     net = shapely.union_all(everything, grid_size=PRECISION_DEG)
     pieces = shapely.get_parts(shapely.polygonize(shapely.get_parts(net)))

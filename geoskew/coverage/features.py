@@ -132,16 +132,12 @@ def lines_of(features: Sequence[Feature]) -> list[Feature]:
 
     if all(feature.geometry.geom_type in POLYGONS for feature in features):
         features = _boundaries(features)
-    lines = []
+    lines: list[Feature] = []
     for level in sorted({feature.level for feature in features}):
         same = [feature for feature in features if feature.level == level]
-        parts = []
-        for feature in same:
-            geometry = feature.geometry
-            parts.extend(shapely.get_parts(geometry.boundary if geometry.geom_type in POLYGONS else geometry))
-        snapped = [shapely.set_precision(part, PRECISION_DEG) for part in parts]
-        merged = shapely.line_merge(shapely.union_all(shapely.multilinestrings([p for p in snapped if not p.is_empty])))
-        lines.extend(Feature(_closed(line), level, _drawn_by(line, same)) for line in shapely.get_parts(merged))
+        drawn = shapely.union_all([_outline(feature) for feature in same], grid_size=PRECISION_DEG)
+        merged = shapely.get_parts(shapely.line_merge(drawn))
+        lines.extend(Feature(_closed(line), level, _drawn_by(line, same)) for line in merged)
     return lines
 
 
@@ -158,9 +154,13 @@ def _closed(line: Any) -> Any:
 def _drawn_by(line: Any, features: Sequence[Feature]) -> str:
     """Name of the feature that a merged line mostly comes from."""
     middle = line.interpolate(0.5, normalized=True)
-    return min(features, key=lambda feature: feature.geometry.distance(middle)
-               if feature.geometry.geom_type not in POLYGONS
-               else feature.geometry.boundary.distance(middle)).name
+    return min(features, key=lambda feature: float(_outline(feature).distance(middle))).name
+
+
+def _outline(feature: Feature) -> Any:
+    """Lines of a feature: itself, or the rings of a polygon."""
+    geometry = feature.geometry
+    return geometry.boundary if geometry.geom_type in POLYGONS else geometry
 
 
 def _boundaries(features: Sequence[Feature]) -> list[Feature]:
@@ -180,7 +180,7 @@ def _boundaries(features: Sequence[Feature]) -> list[Feature]:
     edges = [area.boundary for area in areas]
     west, south, east, north = shapely.total_bounds(areas)
     frame = shapely.box(west, south, east, north).boundary.buffer(10 * PRECISION_DEG)
-    lines = []
+    lines: list[Feature] = []
     for index, level in enumerate(levels):
         others = [edge for number, edge in enumerate(edges) if number != index]
         shared = shapely.union_all(others).buffer(10 * PRECISION_DEG)
@@ -198,9 +198,10 @@ def _refuse_disorder(features: Sequence[Feature]) -> None:
     """Refuse polygons that cross, and a lower level that lies within a higher one."""
     import shapely
 
-    tree = shapely.STRtree([feature.geometry for feature in features])
+    areas = [feature.geometry for feature in features]
+    pairs = shapely.STRtree(areas).query(areas, predicate="intersects")
     problems = []
-    for first, second in zip(*tree.query([f.geometry for f in features], predicate="intersects"), strict=True):
+    for first, second in zip(*pairs, strict=True):
         low, high = features[first], features[second]
         if low.level >= high.level:
             continue

@@ -16,15 +16,17 @@ from geoskew.coverage.spline import Lattice, Surface, ThinPlate
 
 Array = NDArray[np.float64]
 
-# Cells along the longer side of the map: enough for a gap between contours to hold two of them.
+# Cells along the longer side of the map: enough for a gap between contours to hold two of them. The
+# second number of the most is tried where the first misses a level by more than the misfit.
 FEWEST_CELLS: Final = 48
-MOST_CELLS: Final = 96
+MOST_CELLS: Final = (96, 144)
+MISFIT_DB: Final = 0.03
 # The natural rise of summits is read off a coarser fit, of this many times the step.
 COARSER: Final = 1.6
 # Points along a contour, lattice steps apart.
 SPACING: Final = 0.4
 # The field ends at the latest this many typical gaps between the two lowest levels outside of them.
-REACH_GAPS: Final = 2.0
+REACH_GAPS: Final = 1.5
 # A bound counts as kept when the surface passes it by less than this share of a contour step.
 SLACK: Final = 0.01
 # Weight of a passed bound against 1 of a point on a contour, and the most rounds of holding.
@@ -85,23 +87,32 @@ class Fitting:
         lowest = [gap for line, gap in zip(self.lines, gaps, strict=True) if line.level == levels[0]]
         self.reach = REACH_GAPS * float(np.median(np.concatenate(lowest)))
         self.gap = float(np.percentile(np.concatenate(gaps), 10))
-        self.lattice = self._lattice()
+        self.lattice = self._lattice(MOST_CELLS[0])
         self.known = shapely.union_all([face.area for face in self.faces if face.kind != "outside"])
 
-    def _lattice(self, coarser: float = 1.0) -> Lattice:
+    def _lattice(self, most_cells: float, coarser: float = 1.0) -> Lattice:
         import shapely
 
         west, south, east, north = shapely.total_bounds([line.geometry for line in self.lines])
         longest = max(east - west, north - south) + 2.0 * self.reach
-        step = coarser * min(max(0.5 * self.gap, longest / MOST_CELLS), longest / FEWEST_CELLS)
+        step = coarser * min(max(0.5 * self.gap, longest / most_cells), longest / FEWEST_CELLS)
         edge = self.reach + step
         return Lattice.over((west - edge, south - edge, east + edge, north + edge), step)
 
     def surface(self) -> tuple[Surface, float]:
         """Fit the surface; also give the largest misfit along the contours, dB."""
+        for most_cells in MOST_CELLS:
+            self.lattice = self._lattice(most_cells)
+            surface, misfit = self._fitted(self._lattice(most_cells, COARSER))
+            if misfit <= MISFIT_DB:
+                break
+        return surface, misfit
+
+    def _fitted(self, coarser: Lattice) -> tuple[Surface, float]:
+        """Fit over the present lattice, the rise of summits read off a coarser one."""
         x, y, values = self._along()
         samples = self._samples()
-        coarse = ThinPlate(self._lattice(COARSER)).solve(x, y, values, np.ones(x.size))
+        coarse = ThinPlate(coarser).solve(x, y, values, np.ones(x.size))
         added = self._summits(coarse, samples)
         data = [np.concatenate([old, new]) for old, new in zip((x, y, values), added, strict=True)]
         surface = self._held(ThinPlate(self.lattice), samples, data)
@@ -146,7 +157,7 @@ class Fitting:
         points = np.column_stack([x[beyond], y[beyond]])
         to_contour, _ = contour.query(points)
         to_hull, _ = cKDTree(_spread(hull.boundary, spacing)).query(points)
-        return beyond[to_contour <= to_hull + 0.5 * spacing]
+        return np.asarray(beyond[to_contour <= to_hull + 0.5 * spacing], dtype=np.intp)
 
     def _summits(self, surface: Surface, samples: Samples) -> tuple[Array, Array, Array]:
         """Points inside the summits and hollows with the values of the bent rise; bounds are set as well."""
@@ -179,7 +190,8 @@ class Fitting:
     def _held(self, plate: ThinPlate, samples: Samples, data: list[Array]) -> Surface:
         """Fit, and hold the surface to the bounds of its faces with one-sided penalties, round by round."""
         slack = SLACK * min(np.diff(self.levels))
-        surface = plate.solve(*data, np.ones(data[0].size))
+        x, y, wanted = data
+        surface = plate.solve(x, y, wanted, np.ones(x.size))
         for _ in range(ROUNDS):
             values = surface.values(samples.x, samples.y)
             over = np.nan_to_num(np.maximum(values - samples.high, samples.low - values))
@@ -188,10 +200,10 @@ class Fitting:
             passed = np.flatnonzero(over > 0.0)
             bound = np.clip(values[passed], samples.low[passed], samples.high[passed])
             surface = plate.solve(
-                np.concatenate([data[0], samples.x[passed]]),
-                np.concatenate([data[1], samples.y[passed]]),
-                np.concatenate([data[2], bound]),
-                np.concatenate([np.ones(data[0].size), np.full(passed.size, PENALTY)]),
+                np.concatenate([x, samples.x[passed]]),
+                np.concatenate([y, samples.y[passed]]),
+                np.concatenate([wanted, bound]),
+                np.concatenate([np.ones(x.size), np.full(passed.size, PENALTY)]),
             )
         return surface
 
@@ -205,7 +217,7 @@ class Fitting:
         distance, _ = cKDTree(edge).query(np.column_stack([x.ravel(), y.ravel()]))
         shapely.prepare(self.known)
         inside = shapely.contains_xy(self.known, x.ravel(), y.ravel())
-        return np.where(inside, -distance, distance).reshape(x.shape)
+        return np.asarray(np.where(inside, -distance, distance).reshape(x.shape))
 
 
 def bend(rise: Array, natural: float, limit: float) -> Array:
