@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from geoskew.angles import fold
-from geoskew.link import WHOLE_CIRCLE, Array, Response, ratio
+from geoskew.link import WHOLE_CIRCLE, Array, Response, merged_arcs, ratio
 
 # Codes and names of the layer `action`.
 ACTIONS: Final[tuple[tuple[int, str], ...]] = (
@@ -24,7 +24,7 @@ ACTIONS: Final[tuple[tuple[int, str], ...]] = (
 LEAVE, PRESET, TURN_AT_CHANGEOVER, RE_AIM, UPGRADE, NO_SIGHT = range(6)
 
 # Nodes of the Gauss-Hermite rule over the spread of EIRP.
-SPREAD_NODES: Final = 24
+SPREAD_NODES: Final = 16
 
 
 def action(
@@ -129,9 +129,24 @@ def _failing(
     responses: Sequence[Response], intended: ArrayLike, spread_deg: ArrayLike, level_db: float
 ) -> Array:
     """Share (0..1) of settings below the level."""
-    arcs = [response.arc(level_db) for response in responses]
+    arcs = merged_arcs(responses, [level_db] * len(responses))
     middles = [fold(middle - intended) for middle, _ in arcs]
     halves = [half for _, half in arcs]
+    unknown = np.logical_or.reduce(np.broadcast_arrays(*(np.isnan(half) for half in halves)))
+    if len(arcs) == 1:
+        # All that is not the one good arc is bad: from its upper end to its lower one, half a turn on.
+        inside = np.clip(halves[0], 0.0, WHOLE_CIRCLE)
+        failing = _wrapped_normal(middles[0] + inside, middles[0] - inside + 180.0, spread_deg)
+        failing = np.where(halves[0] < 0.0, 1.0, failing)
+    else:
+        failing = _outside_all(middles, halves, intended, spread_deg)
+    return np.where(unknown, np.nan, np.clip(failing, 0.0, 1.0))
+
+
+def _outside_all(
+    middles: Sequence[Array], halves: Sequence[Array], intended: ArrayLike, spread_deg: ArrayLike
+) -> Array:
+    """Share of settings that are outside of at least one arc."""
     shape = np.broadcast_shapes(np.shape(intended), np.shape(spread_deg), *(np.shape(half) for half in halves))
     # Ends of all arcs, counted up from 90° below the intended setting; between neighbours all is good or all bad.
     ends = [np.zeros(shape), np.full(shape, 180.0)]
@@ -146,19 +161,19 @@ def _failing(
             [np.abs(fold(centre - middle)) <= half for middle, half in zip(middles, halves, strict=True)]
         )
         failing = failing + np.where(good, 0.0, _wrapped_normal(low, high, spread_deg))
-    unknown = np.logical_or.reduce([np.isnan(half) for half in halves])
-    return np.where(unknown, np.nan, np.clip(failing, 0.0, 1.0))
+    return failing
 
 
 def _wrapped_normal(low: Array, high: Array, spread_deg: ArrayLike) -> Array:
-    """Normal distribution about 0 over [low, high] and its images 180° away."""
+    """Normal distribution about 0 over [low, high], within −90..270°, and its images 180° away."""
     from scipy.special import ndtr
 
     spread = np.maximum(np.asarray(spread_deg, dtype=np.float64), 1e-9)
-    images = int(np.ceil(8.0 * float(np.max(spread)) / 180.0)) + 1
+    reach = int(np.ceil((90.0 + 8.5 * float(np.max(spread))) / 180.0))
     total = np.zeros(np.broadcast_shapes(low.shape, spread.shape))
-    for image in range(-images, images + 1):
-        upper, lower = (high + 180.0 * image) / spread, (low + 180.0 * image) / spread
-        # Both tails from the side where they are small keep the digits of rare failures.
-        total = total + np.where(lower > 0.0, ndtr(-lower) - ndtr(-upper), ndtr(upper) - ndtr(lower))
+    for image in range(-reach - 1, reach + 1):
+        lower, upper = (low + 180.0 * image) / spread, (high + 180.0 * image) / spread
+        # Taken from the side where both tails are small, rare failures keep their digits.
+        flip = lower > 0.0
+        total = total + ndtr(np.where(flip, -lower, upper)) - ndtr(np.where(flip, -upper, lower))
     return total

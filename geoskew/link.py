@@ -9,6 +9,7 @@ constants for one carrier at one moment; `policies` works on several of them.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Final
 
@@ -156,6 +157,8 @@ class Response:
         cosine = self.neighbour_cosine - swing * (self.crossed + allowed)
         if self.phasors:
             return self.suits, _half_width(constant, -cosine, 2.0 * self._phase())
+        if np.ndim(self.neighbour_sine) == 0 and self.neighbour_sine == 0.0:
+            return self.suits, _half_width(constant, -cosine, np.zeros(())) + 0.0 * self.suits
         size = np.hypot(cosine, self.neighbour_sine)
         offset = 0.5 * np.arctan2(-np.asarray(self.neighbour_sine), -cosine)
         return self.suits + np.rad2deg(offset), _half_width(constant, size, np.zeros(())) + 0.0 * self.suits
@@ -174,3 +177,18 @@ def _half_width(constant: Array, size: Array, phase: Array) -> Array:
     half = np.where((quotient > 1.0) | (half < 0.0), EMPTY_ARC, half)
     half = np.where((quotient <= -1.0) & (phase == 0.0), WHOLE_CIRCLE, half)
     return np.where(np.isnan(constant) | np.isnan(size), np.nan, half)
+
+
+def merged_arcs(responses: Sequence[Response], levels_db: Sequence[ArrayLike]) -> list[tuple[Array, Array]]:
+    """Arcs of settings that keep a level, one a response; those about one and the same middle as one.
+
+    Carriers of one moment mostly suit at the same setting: of arcs about one middle the narrowest is
+    what they have in common.
+    """
+    merged: dict[int, tuple[Array, Array]] = {}
+    for number, (response, level) in enumerate(zip(responses, levels_db, strict=True)):
+        middle, half = response.arc(level)
+        # An arc's middle is the array `suits` itself unless a neighbour moves it.
+        key = id(middle) if middle is response.suits else -1 - number
+        merged[key] = (middle, np.minimum(merged[key][1], half)) if key in merged else (middle, half)
+    return list(merged.values())

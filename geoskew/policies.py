@@ -11,14 +11,15 @@ from dataclasses import dataclass
 from typing import Final, NamedTuple
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
 from geoskew.angles import fold
-from geoskew.link import WHOLE_CIRCLE, Array, Response
+from geoskew.link import WHOLE_CIRCLE, Array, Response, merged_arcs
 
-# Halvings of the excess between its bounds: 60 dB / 2^44 is 3e-12 dB, which leaves the setting
-# exact to some 1e-6° where two curves cross and, by taking the middle of what is left, at a smooth peak.
-HALVINGS: Final = 44
+# The excess is found to this: some 1e-6° of a curve's flank. At a smooth peak the middle of what is left is taken.
+EXCESS_TOLERANCE_DB: Final = 1e-8
+# Enough to halve 200 dB down to the tolerance.
+MOST_STEPS: Final = 40
 
 # Two settings whose turns differ by less than this are the same turn to either side.
 TIE_DEG: Final = 1e-6
@@ -64,8 +65,8 @@ def least_excess(curves: Sequence[Curve], setting: ArrayLike) -> Array:
 
 
 def _arcs(curves: Sequence[Curve], level: Array) -> tuple[list[Array], list[Array]]:
-    pairs = [curve.response.arc(level + curve.held_to) for curve in curves]
-    return [middle for middle, _ in pairs], [half for _, half in pairs]
+    arcs = merged_arcs([curve.response for curve in curves], [level + curve.held_to for curve in curves])
+    return [middle for middle, _ in arcs], [half for _, half in arcs]
 
 
 def _in_all(setting: Array, middles: Sequence[Array], halves: Sequence[Array], skip: int) -> Array:
@@ -77,35 +78,54 @@ def _in_all(setting: Array, middles: Sequence[Array], halves: Sequence[Array], s
     return good
 
 
-def _meet(middles: Sequence[Array], halves: Sequence[Array]) -> NDArray[np.bool_]:
-    """Whether the arcs have a setting in common."""
+def _overlap(middles: Sequence[Array], halves: Sequence[Array]) -> Array:
+    """How far the arcs overlap: negative where they have no setting in common.
+
+    Of two arcs in degrees, so that a search can follow it; of more, only +1 or −1.
+    """
+    if len(middles) == 1:
+        return halves[0]
     if len(middles) == 2:
         gap = np.abs(fold(middles[0] - middles[1]))
         both = (halves[0] >= 0.0) & (halves[1] >= 0.0)
-        return np.asarray(both & (gap <= halves[0] + halves[1]))
+        return np.where(both, halves[0] + halves[1] - gap, -1.0)
     none_empty = np.logical_and.reduce([half >= 0.0 for half in halves])
-    all_whole = np.logical_and.reduce([half >= WHOLE_CIRCLE for half in halves])
+    found = np.logical_and.reduce([half >= WHOLE_CIRCLE for half in halves])
     # If the arcs have anything in common, the lower end of one of them is in all the others.
-    found = all_whole
     for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
         found = found | ((half < WHOLE_CIRCLE) & _in_all(middle - half, middles, halves, number))
-    return np.asarray(none_empty & found)
+    return np.where(none_empty & found, 1.0, -1.0)
 
 
-def _search(curves: Sequence[Curve], shape: tuple[int, ...]) -> tuple[Array, Array]:
-    """The greatest level of excess at which all arcs still meet, bracketed: (met, not met)."""
+def _search(curves: Sequence[Curve], shape: tuple[int, ...]) -> Array:
+    """The greatest level of excess at which all arcs still meet, to the tolerance and from below.
+
+    Regula falsi after Illinois on the overlap of the arcs, every third step a bisection, for all
+    places at once.
+    """
     bound = [curve.response.best_bound() - curve.held_to for curve in curves]
     high = np.broadcast_to(np.minimum.reduce(np.broadcast_arrays(*bound)), shape) + BACK_OFF_DB
-    starts = [np.broadcast_to(least_excess(curves, curve.response.suits), shape) for curve in curves]
-    low = np.maximum(np.maximum.reduce(starts), LOWEST_EXCESS_DB)
+    starts = {id(curve.response.suits): curve.response.suits for curve in curves}
+    reached = [np.broadcast_to(least_excess(curves, suits), shape) for suits in starts.values()]
     # The best of the curves' own settings is reached; a hair below it rounding cannot unmake it.
-    low = low - BACK_OFF_DB
-    for _ in range(HALVINGS):
+    low = np.maximum(np.maximum.reduce(reached), LOWEST_EXCESS_DB) - BACK_OFF_DB
+    value_low = np.maximum(_overlap(*_arcs(curves, low)), 0.0)
+    value_high = np.minimum(_overlap(*_arcs(curves, high)), -1e-12)
+    for step in range(MOST_STEPS):
+        if not np.any(high - low > EXCESS_TOLERANCE_DB):
+            break
         middle = 0.5 * (low + high)
-        met = _meet(*_arcs(curves, middle))
-        low = np.where(met, middle, low)
-        high = np.where(met, high, middle)
-    return low, high
+        if step % 3 != 2:
+            with np.errstate(invalid="ignore", divide="ignore"):
+                falsi = low + (high - low) * value_low / (value_low - value_high)
+            middle = np.where((falsi > low) & (falsi < high), falsi, middle)
+        value = _overlap(*_arcs(curves, middle))
+        met = value >= 0.0
+        # Illinois: an end that stays counts half, so that the other one does not creep.
+        value_high = np.where(met, 0.5 * value_high, value)
+        value_low = np.where(met, value, 0.5 * value_low)
+        low, high = np.where(met, middle, low), np.where(met, high, middle)
+    return low
 
 
 def _place_in_arcs(curves: Sequence[Curve], level: Array, present: Array) -> Array:
@@ -149,14 +169,14 @@ def shared_setting(curves: Sequence[Curve], present: ArrayLike) -> Shared:
     Notes
     -----
     Settings that keep a level are one arc a curve in closed form, so the search runs over the level
-    (bisection for all places at once) and never over settings; the optimum may sit on a kink.
+    (for all places at once) and never over settings; the optimum may sit on a kink.
     """
     present = np.asarray(present, dtype=np.float64)
     shape = np.broadcast_shapes(
         present.shape,
         *(np.broadcast_shapes(c.response.suits.shape, c.response.noise.shape, c.held_to.shape) for c in curves),
     )
-    low, _ = _search(curves, shape)
+    low = _search(curves, shape)
     turn = _place_in_arcs(curves, low - BACK_OFF_DB, np.broadcast_to(present, shape))
     excess = least_excess(curves, present + turn)
     window_low, window_high = _window(curves, present, turn)

@@ -11,5 +11,6 @@ from geoskew.catalogue import settings
 from geoskew.catalogue import links
 from geoskew.catalogue import margins
 from geoskew.catalogue import decisions
+from geoskew.catalogue import outages
 
-__all__ = ["decisions", "directions", "links", "margins", "settings"]
+__all__ = ["decisions", "directions", "links", "margins", "outages", "settings"]

@@ -11,8 +11,14 @@ from geoskew.situation.carriers import BEFORE, REALIGNED, Stand
 
 
 def _of_weakest(situation: Situation, stand: Stand, field: str) -> Array:
-    links = [situation.link(stand, number, rain=False) for number in range(len(situation.carriers(stand.moment)))]
-    return situation.of_weakest(stand.moment, [getattr(one, field) for one in links])
+    numbers = range(len(situation.carriers(stand.moment)))
+    values = [
+        situation.path(stand, number).eirp
+        if field == "eirp"
+        else situation.link(stand, number, rain=False).carrier_to_noise
+        for number in numbers
+    ]
+    return situation.of_weakest(stand.moment, values)
 
 
 def _rain(situation: Situation, stand: Stand) -> Array:

@@ -4,6 +4,9 @@ from __future__ import annotations
 
 from typing import Any
 
+import numpy as np
+
+from geoskew.angles import fold
 from geoskew.geometry import Array
 from geoskew.layers import layer
 from geoskew.situation import Situation
@@ -86,3 +89,34 @@ def margin_realigned_rain(situation: Situation) -> Array:
 )
 def margin_reversed_rain(situation: Situation) -> Array:
     return situation.margin(UNTOUCHED, situation.policy_reversed, rain=True)
+
+
+def _marked(situation: Situation) -> Array:
+    """The shared setting moved to the nearest mark of the feed's scale, degrees.
+
+    Marks lie at the scale's zero and whole steps from it; where the zero is not known a crew counts
+    whole steps from the present setting.
+    """
+    step = np.asarray(situation.terminal("scale_step_deg"), dtype=np.float64)
+    zero = situation.places.columns.get("scale_zero_deg")
+    base = situation.present if zero is None else np.where(np.isnan(zero), situation.present, zero)
+    turn = fold(situation.policy_shared - base)
+    return base + step * np.rint(turn / step)
+
+
+@layer(
+    **_TWO,
+    where="sites",
+    description="Deciding margin before the changeover at the mark of the feed's scale nearest to the shared setting",
+)
+def margin_marked_before(situation: Situation) -> Array:
+    return situation.deciding_margin(BEFORE, _marked(situation))
+
+
+@layer(
+    **_TWO,
+    where="sites",
+    description="Deciding margin after the changeover at the mark of the feed's scale nearest to the shared setting",
+)
+def margin_marked_after(situation: Situation) -> Array:
+    return situation.deciding_margin(UNTOUCHED, _marked(situation))

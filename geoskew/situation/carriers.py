@@ -51,46 +51,55 @@ class Neighbours(NamedTuple):
     sine: Array
 
 
-class Link(NamedTuple):
-    """Every term of one carrier's link with a perfectly set feed, for the response and for `spot --budget`."""
+class Path(NamedTuple):
+    """What of a carrier's link does not depend on the weather, dB."""
 
     eirp: Array
     free_space: Array
-    sky: Sky
     pointing: Array
+    gain: Array
+
+
+class Link(NamedTuple):
+    """Every term of one carrier's link with a perfectly set feed, for the response and for `spot --budget`."""
+
+    path: Path
+    sky: Sky
     system_noise: Array
     figure_of_merit: Array
     carrier_to_noise: Array
 
 
-def link(carrier: Any, *, eirp: Array, range_km: Array, sky: Sky, off_axis: Array, dish: Any) -> Link:
-    """The link of a carrier with a perfectly set feed. `dish(name)` gives a terminal's value at each place."""
+def path(carrier: Any, *, eirp: Array, range_km: Array, off_axis: Array, dish: Any) -> Path:
+    """The terms of a carrier's link without weather. `dish(name)` gives a terminal's value at each place."""
     frequency = carrier.frequency_ghz
-    free_space = receiver.free_space_loss(range_km, frequency_ghz=frequency)
-    pointing = receiver.wanted_gain_loss(
-        off_axis,
-        diameter_m=dish("dish_m"),
-        efficiency=dish("efficiency"),
-        frequency_ghz=frequency,
-        mask=dish("receive_mask"),
+    aperture = {"diameter_m": dish("dish_m"), "efficiency": dish("efficiency"), "frequency_ghz": frequency}
+    return Path(
+        eirp=eirp,
+        free_space=receiver.free_space_loss(range_km, frequency_ghz=frequency),
+        pointing=receiver.wanted_gain_loss(off_axis, **aperture, mask=dish("receive_mask")),
+        gain=receiver.antenna_gain(dish("dish_m"), efficiency=dish("efficiency"), frequency_ghz=frequency),
     )
+
+
+def link(carrier: Any, path: Path, sky: Sky, *, dish: Any) -> Link:
+    """The link of a carrier with a perfectly set feed under a sky."""
     noise = receiver.system_noise_temperature(
         sky.radiating,
         noise_figure_db=dish("noise_figure_db"),
         feed_loss_db=dish("feed_loss_db"),
         ground_noise_k=dish("ground_noise_k"),
     )
-    gain = receiver.antenna_gain(dish("dish_m"), efficiency=dish("efficiency"), frequency_ghz=frequency)
     merit = receiver.figure_of_merit(
-        gain, noise, feed_loss_db=dish("feed_loss_db"), radome_loss_db=dish("radome_loss_db")
+        path.gain, noise, feed_loss_db=dish("feed_loss_db"), radome_loss_db=dish("radome_loss_db")
     )
     c_n = carrier_to_noise(
-        eirp,
-        losses_db=free_space + sky.total + pointing,
+        path.eirp,
+        losses_db=path.free_space + sky.total + path.pointing,
         figure_of_merit_db=merit,
         symbol_rate_mbaud=carrier.symbol_rate_mbaud,
     )
-    return Link(eirp, free_space, sky, pointing, noise, merit, c_n)
+    return Link(path, sky, noise, merit, c_n)
 
 
 def leak(
@@ -116,7 +125,7 @@ def response(
     """
     noise = inverse(terms.carrier_to_noise)
     if carrier.adjacent_ci_db is not None:
-        noise = noise + inverse(carrier.adjacent_ci_db) * ratio(terms.pointing)
+        noise = noise + inverse(carrier.adjacent_ci_db) * ratio(terms.path.pointing)
     crossed = ratio(carrier.crossed_offset_db) if carrier.crossed else np.zeros(())
     even, cosine, sine = neighbours
     if phasors or fixed is not None:

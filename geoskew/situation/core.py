@@ -16,7 +16,7 @@ from geoskew.places import Places
 from geoskew.policies import Curve, Shared
 from geoskew.scenario import Scenario
 from geoskew.situation import carriers
-from geoskew.situation.carriers import BEFORE, MIXED_DEG, REALIGNED, UNTOUCHED, Link, Moment, Stand
+from geoskew.situation.carriers import BEFORE, MIXED_DEG, REALIGNED, UNTOUCHED, Link, Moment, Path, Sky, Stand
 from geoskew.situation.inputs import Inputs, prepare
 from geoskew.situation.neighbours import interference
 from geoskew.situation.ports import is_linear, port_offset
@@ -31,6 +31,8 @@ class Situation:
         self.scenario = scenario
         self.places = places
         self.inputs = prepare(scenario) if inputs is None else inputs
+        self._suits: dict[tuple[Stand, int], Array] = {}
+        self._paths: dict[tuple[Stand, int], Path] = {}
         self._links: dict[tuple[Stand, bool, int], Link] = {}
         self._responses: dict[tuple[Stand, bool], list[Response]] = {}
 
@@ -134,26 +136,46 @@ class Situation:
         error = np.asarray(self.terminal("pointing_error_deg"), dtype=np.float64)
         return np.hypot(error, self.separation) if stand.stays else error
 
-    def link(self, stand: Stand, number: int, *, rain: bool) -> Link:
-        """The link of carrier `number` with a perfectly set feed."""
-        key = (stand, rain, number)
-        if key not in self._links:
+    def path(self, stand: Stand, number: int) -> Path:
+        """The terms of carrier `number` that do not depend on the weather."""
+        key = (stand, number)
+        if key not in self._paths:
             view = self.view(stand.moment)
-            self._links[key] = carriers.link(
+            self._paths[key] = carriers.path(
                 self.carriers(stand.moment)[number],
                 eirp=view.eirp,
                 range_km=view.sight.range_m / 1000.0,
-                sky=self.sky.path(stand.moment, number, rain=rain),
                 off_axis=self.off_axis(stand),
                 dish=self.terminal,
             )
+        return self._paths[key]
+
+    def link(self, stand: Stand, number: int, *, rain: bool) -> Link:
+        """The link of carrier `number` with a perfectly set feed, in clear sky or at the stated availability."""
+        key = (stand, rain, number)
+        if key not in self._links:
+            self._links[key] = self.link_under(stand, number, self.sky.path(stand.moment, number, rain=rain))
         return self._links[key]
 
+    def link_under(self, stand: Stand, number: int, sky: Sky) -> Link:
+        """The link of carrier `number` with a perfectly set feed under a given sky."""
+        carrier = self.carriers(stand.moment)[number]
+        return carriers.link(carrier, self.path(stand, number), sky, dish=self.terminal)
+
     def suits(self, stand: Stand, number: int) -> Array:
-        """The setting that suits carrier `number`, degrees; NaN where the satellite serves nobody."""
+        """The setting that suits carrier `number`, degrees; NaN where the satellite serves nobody.
+
+        One and the same array for carriers that suit alike.
+        """
+        offset = self.port_offset[number]
+        key = (stand, id(offset) if stand.moment == "after" else 0)
+        if key not in self._suits:
+            self._suits[key] = self._suit(stand, offset)
+        return self._suits[key]
+
+    def _suit(self, stand: Stand, offset: Array) -> Array:
         if stand.moment == "before":
             return np.where(self.usable_before, self.before.skew, np.nan)
-        offset = self.port_offset[number]
         if stand.stays:
             return np.where(self.usable_before & self.usable_after, fold(self.seen_after + offset), np.nan)
         return np.where(self.usable_after, fold(self.after.skew + offset), np.nan)
@@ -163,13 +185,14 @@ class Situation:
         key = (stand, rain)
         if key not in self._responses:
             self._responses[key] = [
-                self._response(stand, number, rain) for number in range(len(self.carriers(stand.moment)))
+                self.response(stand, number, self.link(stand, number, rain=rain))
+                for number in range(len(self.carriers(stand.moment)))
             ]
         return self._responses[key]
 
-    def _response(self, stand: Stand, number: int, rain: bool) -> Response:
+    def response(self, stand: Stand, number: int, terms: Link) -> Response:
+        """How the margin of carrier `number` depends on the setting, for a link under some sky."""
         carrier = self.carriers(stand.moment)[number]
-        terms = self.link(stand, number, rain=rain)
         phasors = self.scenario.decision.addition == "phasor"
         leak = carriers.leak(
             carrier,

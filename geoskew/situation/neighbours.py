@@ -37,7 +37,7 @@ def interference(situation: Situation, stand: Stand, number: int) -> Neighbours:
 
 def _one(situation: Situation, stand: Stand, number: int, neighbour: object) -> Neighbours:
     carrier = situation.carriers(stand.moment)[number]
-    wanted = situation.link(stand, number, rain=False)
+    wanted = situation.path(stand, number)
     dish = situation.before if stand.moment == "before" or stand.stays else situation.after
     view = View(neighbour, situation.places)
     off_axis = np.hypot(
@@ -52,11 +52,10 @@ def _one(situation: Situation, stand: Stand, number: int, neighbour: object) -> 
     mask = situation.terminal("receive_mask")
     gain = receiver.interference_gain(off_axis, **antenna, mask=mask)
     cross = receiver.interference_gain_cross(off_axis, **antenna, mask=mask)
-    peak = receiver.antenna_gain(**antenna)
     free_space = receiver.free_space_loss(view.sight.range_m / 1000.0, frequency_ghz=carrier.frequency_ghz)
     # Below the horizon a neighbour is shadowed by the Earth.
     over = ratio(
-        (view.satellite.eirp_dbw - free_space + gain) - (wanted.eirp - wanted.free_space + peak - wanted.pointing)
+        (view.satellite.eirp_dbw - free_space + gain) - (wanted.eirp - wanted.free_space + wanted.gain - wanted.pointing)
     )
     over = np.where(view.elevation > 0.0, over, 0.0)
     leak = ratio(-np.asarray(view.satellite.isolation_db)) + ratio(cross - gain)

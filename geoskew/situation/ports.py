@@ -24,13 +24,14 @@ def old_port(before: Sequence[Any]) -> str | None:
 def port_offset(before: Sequence[Any], after: Sequence[Any], ports: Any) -> list[Array]:
     """Degrees to add, a new carrier, to the angle that suits it.
 
-    With one port, the old carriers' port takes the new ones too: a carrier of the other linear
+    The same array for carriers of the same offset. With one port, the old carriers' port takes the new ones too: a carrier of the other linear
     polarisation suits at 90° more. With two ports, or a switched one, it is simply taken at the other.
     """
     port = old_port(before)
-    single = np.asarray(ports) == 1
-    offsets = []
-    for old, new in zip(before, after, strict=True):
-        crossed = port is not None and is_linear(old) and is_linear(new) and new.polarisation != port
-        offsets.append(np.where(single & crossed, 90.0, 0.0))
-    return offsets
+    quarter, none = np.where(np.asarray(ports) == 1, 90.0, 0.0), np.zeros(())
+    return [
+        quarter
+        if port is not None and is_linear(old) and is_linear(new) and new.polarisation != port
+        else none
+        for old, new in zip(before, after, strict=True)
+    ]
