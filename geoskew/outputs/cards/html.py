@@ -161,7 +161,8 @@ def _dial(dial: Dial) -> str:
     label = f"Dial seen from {place}: from {dial.present:.1f} to {dial.target:.1f} degrees"
     return (
         f"<figure data-view='{place}'><svg viewBox='{size}' role='img' aria-label='{label}'>"
-        f"<use href='#{_ring_name(dial.step, dial.from_behind)}'/>{marks}</svg><figcaption>{caption}</figcaption></figure>"
+        f"<use href='#{_ring_name(dial.step, dial.from_behind)}'/>{marks}</svg>"
+        f"<figcaption>{caption}</figcaption></figure>"
     )
 
 

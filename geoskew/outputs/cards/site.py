@@ -80,14 +80,17 @@ def job_of(values: Mapping[str, Any], facts: CardFacts) -> Job:
     turning = Turning(None)
     if math.isfinite(wanted) and math.isfinite(present):
         turning = plan_turning(present, wanted, feed, slack=window or (wanted, wanted))
+    # With one port and a carrier of the other polarisation the turn holds a quarter that the setting's
+    # column does not: what is printed is then the sum and no column.
+    goal = fold(present + wanted)
     return Job(
         row=row,
         action=action,
         present=present,
         wanted=wanted,
         turn_field=turn_field,
-        goal=fold(present + wanted),
-        goal_field=goal_field,
+        goal=goal,
+        goal_field=goal_field if abs(fold(row.number(goal_field) - goal)) < 0.005 else "target_to_reach",
         window=window,
         turning=turning,
         scale=_scale(row),

@@ -105,7 +105,8 @@ def _turn(job: Job, way: Way) -> list[Line]:
             f" {sense_from_behind(way.turn)}: ",
             Number("marks", abs(way.turn) / job.scale.step, marks_in_words(way.turn / job.scale.step)),
             f" of the scale ({job.scale.step:g}° a mark). "
-            f"Standing IN FRONT of the dish, looking into it, the same turn goes {sense_from_front(way.turn)}.",
+            "Standing IN FRONT of the dish, looking into it, the same turn goes ",
+            f"{sense_from_front(way.turn)}.",
         )
     )
     shorter = job.turning.shorter

@@ -2,16 +2,13 @@
 
 from __future__ import annotations
 
-import os
-from collections.abc import Iterator
-from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from geoskew.errors import OutputError
 from geoskew.outputs.cards import html
 from geoskew.outputs.cards.facts import CardFacts
 from geoskew.outputs.cards.sheet import sheet_of
+from geoskew.outputs.files import writing
 
 if TYPE_CHECKING:
     import pandas
@@ -53,24 +50,11 @@ def write_cards(
     sheet = sheet_of(table, facts, order)
     warnings = list(sheet.warnings)
     if html_path is not None:
-        with _whole(html_path) as part, part.open("w", encoding="utf-8", newline="\n") as stream:
+        with writing(html_path) as part, part.open("w", encoding="utf-8", newline="\n") as stream:
             stream.writelines(html.pages(sheet, facts))
     if pdf_path is not None:
         from geoskew.outputs.cards import pdf
 
-        with _whole(pdf_path) as part:
+        with writing(pdf_path) as part:
             warnings += pdf.draw(part, sheet, facts)
     return warnings
-
-
-@contextmanager
-def _whole(path: Path) -> Iterator[Path]:
-    """A scratch name beside the final one; the final name is taken only when all went well."""
-    part = path.with_name(f"{path.name}.part-{os.getpid()}")
-    try:
-        yield part
-        part.replace(path)
-    except OSError as error:
-        raise OutputError(f"{path}: the cards could not be written ({error.strerror or error})") from error
-    finally:
-        part.unlink(missing_ok=True)

@@ -1,0 +1,8 @@
+"""The plan of visits as files: day sheets, workbook, driving lines, calendar."""
+
+from __future__ import annotations
+
+from geoskew.outputs.visits.sheet import VisitSheets
+from geoskew.outputs.visits.write import ENDINGS, write_visits
+
+__all__ = ["ENDINGS", "VisitSheets", "write_visits"]

@@ -1,0 +1,94 @@
+"""The plan as a GeoPackage: driving lines, stops, and those who are not reached."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from geoskew.outputs import geopackage
+from geoskew.outputs.geopackage import About
+from geoskew.outputs.visits.sheet import MEANINGS, VisitSheets, stops
+
+if TYPE_CHECKING:
+    import pandas
+
+
+def write_lines(part: Path, sheets: VisitSheets) -> None:
+    """Write the layers ``tours`` (a line a crew and day, from the base and back), ``visits``, ``unreached``.
+
+    A line that crosses 180° of longitude runs on past it, so that it stays short on a map.
+    """
+    import shapely
+
+    table = stops(sheets)
+    lost = sheets.unreached[sheets.unreached["lon"].notna() & sheets.unreached["lat"].notna()]
+    with geopackage.reproducible():
+        _add(part, "tours", "LineString", sheets.days, _tours(sheets), "Driving lines of each crew's days")
+        points = shapely.points(_numbers(table, "lon"), _numbers(table, "lat"))
+        _add(part, "visits", "Point", table, points, "Stops in order of driving")
+        points = shapely.points(_numbers(lost, "lon"), _numbers(lost, "lat"))
+        _add(part, "unreached", "Point", lost, points, "Sites that cannot be reached in time")
+    tours = [
+        About("crew", MEANINGS["crew"]),
+        About("day", MEANINGS["day"]),
+        About("visits", "Stops of the day"),
+    ]
+    tours += [About("km", "Road of the day with the way out and home (km)")]
+    tours += [
+        About("base_lon", "Longitude of the base (deg)"),
+        About("base_lat", "Latitude of the base (deg)"),
+    ]
+    described = {
+        "visits": [About(str(name), MEANINGS[name]) for name in table.columns],
+        "unreached": [About(str(name), MEANINGS[name]) for name in lost.columns],
+    }
+    geopackage.describe(part, {"tours": tours, **described})
+
+
+def _tours(sheets: VisitSheets) -> list[Any]:
+    import numpy as np
+    import shapely
+
+    by_day = dict(list(sheets.visits.groupby(["crew", "day"], sort=False)))
+    lines = []
+    for load in sheets.days.to_dict("records"):
+        visits = by_day[load["crew"], load["day"]].sort_values("order")
+        lon = np.array([load["base_lon"], *visits["lon"], load["base_lon"]], dtype=float)
+        lat = np.array([load["base_lat"], *visits["lat"], load["base_lat"]], dtype=float)
+        lines.append(shapely.LineString(np.column_stack((np.unwrap(lon, period=360.0), lat))))
+    return lines
+
+
+def _numbers(table: pandas.DataFrame, name: str) -> Any:
+    return table[name].to_numpy(dtype=float)
+
+
+def _add(
+    part: Path, layer: str, geometry_type: str, table: pandas.DataFrame, geometry: Any, description: str
+) -> None:
+    import pyarrow
+    import shapely
+
+    columns = {str(name): pyarrow.array(table[name].tolist(), _type(str(name))) for name in table.columns}
+    columns["geom"] = pyarrow.array(list(shapely.to_wkb(geometry)), pyarrow.binary())
+    geopackage.add_layer(
+        part,
+        pyarrow.table(columns),
+        layer=layer,
+        geometry_type=geometry_type,
+        crs="EPSG:4326",
+        title=layer,
+        description=description,
+    )
+
+
+def _type(name: str) -> Any:
+    """The type of a column, the same whether the table has rows or not."""
+    import pyarrow
+
+    if name == "day":
+        return pyarrow.date32()
+    if name in ("order", "visits"):
+        return pyarrow.int64()
+    numbers = ("turn", "km_leg", "lon", "lat", "km", "base_lon", "base_lat", "weight", "fail_probability")
+    return pyarrow.float64() if name in numbers else pyarrow.string()
