@@ -19,11 +19,16 @@ class ColumnFact(Protocol):
     """What is to be known of a column of the assessed table."""
 
     @property
-    def name(self) -> str: ...
+    def name(self) -> str:
+        """Name of the column."""
+
     @property
-    def unit(self) -> str: ...
+    def unit(self) -> str:
+        """Unit, empty for none."""
+
     @property
-    def meaning(self) -> str: ...
+    def meaning(self) -> str:
+        """One line of what it holds."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -57,9 +57,7 @@ def packed_lines(
     return pack(arrays, texts=texts, facts={"decimals": decimals, **(facts or {})})
 
 
-def packed_contours(
-    contours: Iterable[ContourLine], *, middle: float, tolerance: float
-) -> str:
+def packed_contours(contours: Iterable[ContourLine], *, middle: float, tolerance: float) -> str:
     """Isolines with their levels; points that a pixel would swallow are left out."""
     names: dict[str, int] = {}
     units: list[str] = []
@@ -104,9 +102,7 @@ def packed_basemap(basemap: Basemap, box: Box) -> str:
     land = [piece for ring in basemap.land for piece in _cut(ring, box, closed=True)]
     borders = [piece for line in basemap.borders for piece in _cut(line, box, closed=False)]
     edges = [round((edge + 720.0) * 10**BASE_DECIMALS) for edge in box]
-    return packed_lines(
-        [*land, *borders], decimals=BASE_DECIMALS, facts={"land": len(land), "edges": edges}
-    )
+    return packed_lines([*land, *borders], decimals=BASE_DECIMALS, facts={"land": len(land), "edges": edges})
 
 
 def _cut(line: NDArray[np.float64], box: Box, *, closed: bool) -> list[NDArray[np.float64]]:

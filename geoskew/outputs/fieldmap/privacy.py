@@ -18,8 +18,16 @@ if TYPE_CHECKING:
 
 # From two of these at a hundredth of a degree a place can be worked out again.
 TELLTALE: Final = (
-    "azimuth_", "elevation_", "range_", "skew_", "seen_", "setting_", "horizon_", "clearance_",
-    "diffraction_", "height_m",
+    "azimuth_",
+    "elevation_",
+    "range_",
+    "skew_",
+    "seen_",
+    "setting_",
+    "horizon_",
+    "clearance_",
+    "diffraction_",
+    "height_m",
 )
 # Turns say what to do; whole degrees are enough for that and tell little of the place.
 COARSE: Final = ("turn_", "window_")
@@ -57,9 +65,11 @@ def only(content: MapContent, wanted: Mapping[str, str]) -> MapContent:
         asked = ", ".join(f"{column}={value}" for column, value in wanted.items())
         raise InputError(f"--only {asked}: no site is left; check the value's spelling")
     left = table[keep].reset_index(drop=True)
-    note = f"This map shows {len(left)} of {len(table)} sites: " + ", ".join(
-        f"{column} {value}" for column, value in wanted.items()
-    ) + "."
+    note = (
+        f"This map shows {len(left)} of {len(table)} sites: "
+        + ", ".join(f"{column} {value}" for column, value in wanted.items())
+        + "."
+    )
     return replace(content, sites=left, routes=routes, privacy_note=_joined(content.privacy_note, note))
 
 
@@ -75,11 +85,11 @@ def blurred(content: MapContent, step: float = 0.1) -> MapContent:
         The step is not above 0 and at most 10 degrees.
     """
     if not 0.0 < step <= 10.0:
-        raise InputError(f"--blur {step:g}: the cell must be above 0 and at most 10 degrees; 0.1 is about 11 km")
+        raise InputError(f"--blur {step:g}: a cell is above 0 and at most 10 degrees; 0.1 is about 11 km")
     if content.sites is None:
         return content
     left = _coarse(content.sites, step)
-    note = f"Sites stand at the middle of cells of {step:g}°, not at their own places; directions are left out."
+    note = f"Sites stand at the middle of cells of {step:g}°, not at their places; directions are left out."
     return replace(content, sites=left, routes=(), privacy_note=_joined(content.privacy_note, note))
 
 

@@ -52,7 +52,7 @@ SCRIPTS: Final = (
 STYLES: Final = ("look.css", "panel.css", "print.css")
 
 
-class Verbatim(Element):  # type: ignore[misc]
+class Verbatim(Element):
     """Text that goes into the page as it is: its template is constant and is rendered once."""
 
     _template = Template("{{ this.text }}")
@@ -67,7 +67,7 @@ class Verbatim(Element):  # type: ignore[misc]
         return "verbatim"
 
 
-class PageFigure(Figure):  # type: ignore[misc]
+class PageFigure(Figure):
     """A page with a language, a title that is escaped, and a content policy that forbids the network."""
 
     _template = Template(
@@ -90,16 +90,14 @@ class PageFigure(Figure):  # type: ignore[misc]
         self.header._children.clear()
 
 
-class PageMap(folium.Map):  # type: ignore[misc]
+class PageMap(folium.Map):
     """folium's map without its links: container, options and Leaflet itself, nothing else."""
 
-    default_js: Final = []
-    default_css: Final = []
+    default_js: list[tuple[str, str]] = []  # noqa: RUF012  declared so by folium
+    default_css: list[tuple[str, str]] = []  # noqa: RUF012
 
     def __init__(self, middle: tuple[float, float], zoom: int) -> None:
-        super().__init__(
-            location=middle, zoom_start=zoom, tiles=None, zoom_control=False, prefer_canvas=True
-        )
+        super().__init__(location=middle, zoom_start=zoom, tiles=None, zoom_control=False, prefer_canvas=True)
 
     @classmethod
     def _generate_id(cls) -> str:
@@ -109,10 +107,12 @@ class PageMap(folium.Map):  # type: ignore[misc]
         """Options that the page's own script hands to Leaflet."""
         return {"center": list(self.location), "zoom": self.options["zoom"]}
 
-    def render(self, **kwargs: Any) -> None:
+    def render(self, **kwargs: Any) -> str:
         """Put the container into the page, past the second rendering that folium's macros get."""
         figure = self.get_root()
-        figure.html.add_child(Verbatim(_asset("page.html").strip()), name="page")
+        if isinstance(figure, Figure):
+            figure.html.add_child(Verbatim(_asset("page.html").strip()), name="page")
+        return ""
 
 
 def page(
@@ -198,7 +198,7 @@ def leaflet_notice() -> str:
     for file in metadata.files(LEAFLET_PACKAGE) or ():
         if file.name.upper().startswith("LICEN"):
             return file.read_text(encoding="utf-8").strip()
-    raise OutputError(f"the installed package {LEAFLET_PACKAGE} carries no licence; install it again from the registry")
+    raise OutputError(f"the installed package {LEAFLET_PACKAGE} carries no licence; install it again")
 
 
 def _leaflet_js() -> str:

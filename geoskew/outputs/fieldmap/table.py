@@ -84,7 +84,8 @@ def packed_sites(table: pd.DataFrame, *, judged_in: str) -> tuple[str, str]:
     blocks = []
     for wanted in (True, False):
         names = [
-            str(name) for name in table.columns
+            str(name)
+            for name in table.columns
             if str(name) not in ("lat", "lon", "action") and (str(name) in early) == wanted
         ]
         arrays, texts, facts = _columns(table, names)
@@ -109,10 +110,10 @@ def _columns(
             if layer.is_class:
                 values = np.where(values == 255, np.nan, values)
             arrays[name], back = number_column(values, layer.unit if not layer.is_class else "dB")
-            facts.append({"name": name, "kind": "number", "layer": True, **back})
+            facts.append({"name": name, "kind": "number", "flag": layer.is_class, **back})
         else:
             arrays[name], texts[name] = text_codes(as_text(table[name]))
-            facts.append({"name": name, "kind": "text", "layer": layer is not None})
+            facts.append({"name": name, "kind": "text"})
     return arrays, texts, facts
 
 
@@ -130,9 +131,7 @@ def _digit(cell: str) -> int:
     return int(cell) if cell.isdigit() and int(cell) < 255 else 255
 
 
-def column_facts(
-    columns: Sequence[ColumnFact], names: Sequence[str]
-) -> dict[str, dict[str, str]]:
+def column_facts(columns: Sequence[ColumnFact], names: Sequence[str]) -> dict[str, dict[str, str]]:
     """Unit and meaning of every column of the table, from the given facts or the registry."""
     known: Mapping[str, ColumnFact] = {column.name: column for column in columns}
     out = {}

@@ -2,21 +2,20 @@
 
 from __future__ import annotations
 
-import os
 import re
 from pathlib import Path
 from typing import Any, Final
 
 import numpy as np
 
-from geoskew.errors import InputError, OutputError
+from geoskew.errors import InputError
 from geoskew.layers import REGISTRY, Layer
 from geoskew.outputs.fieldmap.content import MapContent, SatelliteFacts, Tiles
 from geoskew.outputs.fieldmap.extent import Extent, extent_of
 from geoskew.outputs.fieldmap.lines import packed_basemap, packed_contours, packed_routes
 from geoskew.outputs.fieldmap.overlays import packed_overlay
-from geoskew.outputs.fieldmap.shell import leaflet_notice, page
 from geoskew.outputs.fieldmap.table import column_facts, packed_sites, packed_visits
+from geoskew.outputs.files import writing
 from geoskew.ramps import CLASS_COLOURS, CLASS_SHAPES, FLAG_COLOURS, RAMPS
 
 # Above this a phone's mail program or its memory starts to mind.
@@ -45,15 +44,9 @@ def write_fieldmap(path: Path | str, content: MapContent) -> int:
     OutputError
         The file cannot be written; nothing half-written stays.
     """
-    target = Path(path)
     data = compose(content).encode("utf-8", "replace")
-    part = target.with_name(f"{target.name}.part-{os.getpid()}")
-    try:
+    with writing(path) as part:
         part.write_bytes(data)
-        part.replace(target)
-    except OSError as problem:
-        part.unlink(missing_ok=True)
-        raise OutputError(f"{target}: the map cannot be written: {problem.strerror or problem}") from problem
     return len(data)
 
 
@@ -69,6 +62,8 @@ def size_remark(size: int) -> str:
 
 def compose(content: MapContent) -> str:
     """The page as text."""
+    from geoskew.outputs.fieldmap.shell import leaflet_notice, page
+
     extent = extent_of(content)
     blocks: dict[str, str] = {}
     pictures = []
@@ -93,6 +88,7 @@ def compose(content: MapContent) -> str:
     blocks["basemap"] = packed_basemap(content.basemap, extent.frame())
     meta = {**_words(content), **_look(content, extent), "sites": {"count": count}, "pictures": pictures}
     meta["columns"] = column_facts(content.columns, names)
+    meta["thanks"] = {"basemap": content.basemap.attribution, "leaflet": leaflet_notice()}
     return page(
         title=content.title,
         middle=((extent.south + extent.north) / 2.0, middle),
@@ -119,7 +115,6 @@ def _words(content: MapContent) -> dict[str, Any]:
             "port": content.geometry.port_offset,
             "linear": content.geometry.linear,
         },
-        "thanks": {"basemap": content.basemap.attribution, "leaflet": leaflet_notice()},
     }
 
 

@@ -61,9 +61,9 @@
     return fm.element(
       "div", { class: "card-head" },
       fm.element("div", { class: "row" },
-        fm.button("← All sites", () => fm.close(), { id: "back" }),
-        fm.button("On the map", () => fm.centreOn(i)),
-        fm.button("Print card", () => fm.printCard(i), { id: "print-card" })),
+        fm.button("← Sites", () => fm.close(), { id: "back" }),
+        fm.button("On map", () => fm.centreOn(i)),
+        fm.button("Print", () => fm.printCard(i), { id: "print-card" })),
       fm.element("h2", {}, fm.shapeElement(kind, 24), fm.element("span", {}, fm.shortened(fm.siteTitle(i), 160))),
       about ? fm.element("p", { class: "quiet" }, about) : null,
       visits(i)
@@ -192,7 +192,7 @@
     const rows = [...columns].map(([name, { facts, read }]) => {
       const column = fm.meta.columns[name] || {};
       const value = read(i);
-      const text = facts.kind === "number" ? fm.withUnit(value, column.unit || "", 2) : value;
+      const text = facts.kind !== "number" ? value : facts.flag ? (Number.isFinite(value) ? (value ? "yes" : "no") : "") : fm.withUnit(value, column.unit || "", 2);
       if (text === "" || text === fm.none) return null;
       return fm.element("tr", {}, fm.element("th", { scope: "row" }, name, column.meaning ? fm.element("small", {}, column.meaning) : null), fm.element("td", {}, text));
     });
