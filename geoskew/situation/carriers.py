@@ -103,7 +103,7 @@ def link(carrier: Any, path: Path, sky: Sky, *, dish: Any) -> Link:
 
 
 def leak(
-    carrier: Any, *, satellite_db: float, dish: Any, off_axis: Array, rain_db: Array, phasors: bool
+    carrier: Any, *, satellite_db: Array, dish: Any, off_axis: Array, rain_db: Array, phasors: bool
 ) -> Array:
     """What a perfect setting leaves of the crossed polarisation: satellite, dish and feed off the axis, rain."""
     terminal = receiver.isolation_off_axis(

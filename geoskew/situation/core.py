@@ -196,7 +196,7 @@ class Situation:
         phasors = self.scenario.decision.addition == "phasor"
         leak = carriers.leak(
             carrier,
-            satellite_db=self.view(stand.moment).satellite.isolation_db,
+            satellite_db=self.view(stand.moment).isolation,
             dish=self.terminal,
             off_axis=self.off_axis(stand),
             rain_db=terms.sky.depolarisation,

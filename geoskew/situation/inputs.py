@@ -43,12 +43,12 @@ def prepare(scenario: Scenario) -> Inputs:
 
 def _coverage(satellite: Any) -> Coverage | None:
     if satellite.eirp_contours is not None:
-        from geoskew.coverage import contour_field_of_file
+        from geoskew.coverage import contour_field
 
         given = satellite.eirp_contours
-        return contour_field_of_file(given.file, field=given.field, peak_dbw=given.peak_dbw)
+        return contour_field(given.file, given.field, peak_dbw=given.peak_dbw)
     if satellite.eirp_raster is not None:
-        from geoskew.coverage import raster_of_file
+        from geoskew.coverage import raster_field
 
-        return raster_of_file(satellite.eirp_raster)
+        return raster_field(satellite.eirp_raster)
     return None

@@ -82,35 +82,56 @@ class View:
         if self._coverage is not None:
             level = self._coverage.eirp(self.places.longitude, self.places.latitude)
         elif satellite.beams:
-            level = self._strongest_beam()
+            from geoskew.coverage import strongest
+
+            level, _ = strongest(self._beam_levels)
         else:
             level = np.asarray(satellite.eirp_dbw, dtype=np.float64)
         return np.asarray(level + satellite.eirp_offset_db)
 
-    def _strongest_beam(self) -> Array:
-        from geoskew.coverage import beam_eirp
+    @cached_property
+    def isolation(self) -> Array:
+        """Cross-polar isolation of the satellite's antenna towards each place, dB.
 
+        The stated one; towards the flank of an elliptical beam no more than its cross-polar pattern leaves.
+        """
+        stated = np.asarray(self.satellite.isolation_db, dtype=np.float64)
+        if self._coverage is not None or not getattr(self.satellite, "beams", ()):
+            return stated
+        from geoskew.coverage import beam_isolation
+
+        leaves = [beam_isolation(*where, **_ellipse(beam)) for beam, where in self._beams]
+        serving = np.argmax(np.nan_to_num(np.stack(np.broadcast_arrays(*self._beam_levels)), nan=-np.inf), axis=0)
+        return np.minimum(stated, np.choose(serving, np.broadcast_arrays(*leaves)))
+
+    @cached_property
+    def _beams(self) -> list[tuple[Any, tuple[Array, Array]]]:
+        """Each beam with the places' angle off its axis and position angle."""
         where = (self.places.longitude, self.places.latitude)
         direction = self.sight.direction
         travel = Local(-direction.east, -direction.north, -direction.up)
-        levels = []
+        found = []
         for beam in self.satellite.beams:
             frame = self.frame_at(beam.aim if beam.aim is not None else self.satellite.aim)
-            axis, right, top = (geometry.in_local_frame(one, *where) for one in frame)
-            off_axis, position = geometry.off_axis_and_position_angle(axis, right, top, travel)
-            levels.append(
-                beam_eirp(
-                    off_axis,
-                    position,
-                    peak_dbw=beam.peak_dbw,
-                    major_deg=beam.major_deg,
-                    minor_deg=beam.minor_deg,
-                    orientation_deg=beam.orientation_deg,
-                    pattern=beam.pattern,
-                )
-            )
-        return np.asarray(np.maximum.reduce(levels))
+            axes = [geometry.in_local_frame(one, *where) for one in frame]
+            found.append((beam, geometry.off_axis_and_position_angle(axes[0], axes[1], axes[2], travel)))
+        return found
+
+    @cached_property
+    def _beam_levels(self) -> list[Array]:
+        from geoskew.coverage import beam_eirp
+
+        return [beam_eirp(*where, peak_dbw=beam.peak_dbw, **_ellipse(beam)) for beam, where in self._beams]
 
     def usable(self, lowest_elevation: float) -> NDArray[np.bool_]:
         """Where the satellite stands at or above the lowest usable elevation."""
         return np.asarray(self.elevation >= lowest_elevation)
+
+
+def _ellipse(beam: Any) -> dict[str, Any]:
+    return {
+        "major_deg": beam.major_deg,
+        "minor_deg": beam.minor_deg,
+        "orientation_deg": beam.orientation_deg,
+        "pattern": beam.pattern,
+    }
