@@ -31,7 +31,9 @@ def fold(angle: ArrayLike) -> NDArray[np.float64]:
 
 def wrap_longitude(longitude: ArrayLike) -> NDArray[np.float64]:
     """Bring a longitude or a difference of longitudes into [−180, 180), degrees, any shape."""
-    return np.mod(np.asarray(longitude, dtype=np.float64) + 180.0, 360.0) - 180.0
+    wrapped = np.mod(np.asarray(longitude, dtype=np.float64) + 180.0, 360.0) - 180.0
+    # np.mod can round up to the period itself.
+    return np.where(wrapped >= 180.0, -180.0, wrapped)
 
 
 def wrap_azimuth(azimuth: ArrayLike) -> NDArray[np.float64]:

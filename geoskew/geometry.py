@@ -7,7 +7,7 @@ so that a geographic grid (longitude (1, W), latitude (H, 1)) needs no trigonome
 
 from __future__ import annotations
 
-from typing import NamedTuple
+from typing import Final, NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -20,6 +20,9 @@ from geoskew.constants import (
 )
 
 Array = NDArray[np.float64]
+
+# A direction whose level part is less than this (1e-6 m of the place) is the zenith: rounding makes the rest.
+ZENITH_TOLERANCE: Final = 1e-13
 
 
 class Local(NamedTuple):
@@ -119,7 +122,13 @@ def azimuth(direction: Local) -> Array:
 
     Defined below the horizon as well.
     """
-    return wrap_azimuth(np.rad2deg(np.arctan2(direction.east, direction.north)))
+    bearing = np.arctan2(direction.east, direction.north)
+    return wrap_azimuth(np.rad2deg(np.where(at_zenith(direction), 0.0, bearing)))
+
+
+def at_zenith(direction: Local) -> NDArray[np.bool_]:
+    """Whether a direction is straight up or down, where neither azimuth nor a vertical in the view exists."""
+    return np.asarray(direction.east**2 + direction.north**2 < ZENITH_TOLERANCE**2)
 
 
 def elevation(direction: Local) -> Array:

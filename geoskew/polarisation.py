@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from geoskew.angles import fold
-from geoskew.geometry import Array, Local, dot, ellipsoid_position, in_local_frame
+from geoskew.geometry import Array, Local, at_zenith, dot, ellipsoid_position, in_local_frame
 
 # Above this the loss of a crossed feed says nothing more: no antenna is that pure.
 MISMATCH_CAP_DB: Final = 40.0
@@ -93,7 +93,7 @@ def angle_from_vertical(vector: Local, direction: Local) -> Array:
     the horizon as well.
     """
     to_right = vector.east * direction.north - vector.north * direction.east
-    zenith = (direction.east == 0.0) & (direction.north == 0.0)
+    zenith = at_zenith(direction)
     right = np.where(zenith, vector.east, to_right)
     top = np.where(zenith, -vector.north, vector.up)
     return fold(np.rad2deg(np.arctan2(right, top)))
