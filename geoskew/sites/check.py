@@ -162,12 +162,10 @@ def _check_stops(faults: Faults, values: dict[str, NDArray[np.float64]]) -> None
 
 def _name_empty_rows(faults: Faults, table: RawTable) -> None:
     """Say that a row is empty instead of listing its empty cells."""
+    if table.positions is not None:
+        return
     for row, reasons in faults.reasons.items():
-        if (
-            reasons[0] == "id is empty"
-            and table.positions is None
-            and not table.row_text(row).strip(',;\t "') == ""
-        ):
+        if reasons[0] == "id is empty" and not table.row_text(row).strip(',;\t "'):
             faults.reasons[row] = ["the row is empty"]
 
 
