@@ -11,7 +11,7 @@ import numpy as np
 import pandas as pd
 
 import geoskew.catalogue  # noqa: F401  fills the registry, from which the tables take their units
-from geoskew.layers import Layer
+from geoskew.layers import REGISTRY, Layer
 from geoskew.outputs.fieldmap import (
     Basemap,
     ContourLine,
@@ -227,9 +227,22 @@ def basemap() -> Basemap:
     return Basemap([box], [], "Outlines: invented.")
 
 
-def content(count: int = 240, *, pictures: int = 3, **changes: Any) -> MapContent:
-    """A whole map."""
+def with_every_layer(table: pd.DataFrame) -> pd.DataFrame:
+    """The same table with all layers that the registry knows, as a full run gives them."""
+    random = np.random.default_rng(8)
+    more = {}
+    for name, of in REGISTRY.items():
+        if name not in table.columns:
+            spread = random.uniform(*of.limits, len(table))
+            more[name] = np.round(spread) if of.is_class else spread
+    return pd.concat([table, pd.DataFrame(more)], axis=1)
+
+
+def content(count: int = 240, *, pictures: int = 3, every: bool = False, **changes: Any) -> MapContent:
+    """A whole map; with `every`, its sites carry every layer."""
     table = sites(count) if count else None
+    if every and table is not None:
+        table = with_every_layer(table)
     given: dict[str, Any] = {
         "title": "Changeover of the lesson network",
         "geometry": GEOMETRY,
