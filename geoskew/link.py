@@ -109,8 +109,8 @@ class Response:
             return half, half
         return 0.5 * (1.0 + self.leak), 0.5 * (1.0 - self.leak)
 
-    def inverse_ratio(self, setting: ArrayLike) -> Array:
-        """(N+I)/C at settings in degrees."""
+    def at(self, setting: ArrayLike) -> tuple[Array, Array, Array]:
+        """Angle d in radians and the factors on the wanted and the crossed carrier, at settings in degrees."""
         middle, swing = self._factors()
         if self.fixed is not None:
             d = np.full(np.shape(self.suits), np.deg2rad(self.fixed))
@@ -122,11 +122,14 @@ class Response:
         wanted = middle + swing * cosine
         if self.phasors:
             wanted = np.where(theta >= np.pi, 0.0, wanted)
+        return d, wanted, middle - swing * cosine
+
+    def inverse_ratio(self, setting: ArrayLike) -> Array:
+        """(N+I)/C at settings in degrees."""
+        d, wanted, crossed = self.at(setting)
         neighbours = self.neighbour_even + self.neighbour_cosine * np.cos(2.0 * d) + self.neighbour_sine * np.sin(2.0 * d)
         with np.errstate(divide="ignore"):
-            return np.asarray(
-                self.uplink + (self.noise + self.crossed * (middle - swing * cosine) + neighbours) / wanted
-            )
+            return np.asarray(self.uplink + (self.noise + self.crossed * crossed + neighbours) / wanted)
 
     def margin(self, setting: ArrayLike) -> Array:
         """Margin in dB at settings in degrees; NaN where `suits` or the carrier has no value."""

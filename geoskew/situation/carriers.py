@@ -128,9 +128,6 @@ def response(
         noise = noise + inverse(carrier.adjacent_ci_db) * ratio(terms.path.pointing)
     crossed = ratio(carrier.crossed_offset_db) if carrier.crossed else np.zeros(())
     even, cosine, sine = neighbours
-    if phasors or fixed is not None:
-        # Worst case of unknown phases, or a feed that no turn changes: each neighbour in full.
-        even, cosine, sine = even + np.hypot(cosine, sine), np.zeros(()), np.zeros(())
     return Response(
         suits=suits,
         noise=noise,

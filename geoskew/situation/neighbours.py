@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -21,18 +21,30 @@ _HANDS = {"L", "R"}
 
 
 def interference(situation: Situation, stand: Stand, number: int) -> Neighbours:
-    """Power of all neighbours of that moment over the wanted carrier's, as a function of the setting.
+    """Power of all neighbours of that moment over the wanted carrier's, as a function of the setting."""
+    zero = np.zeros(())
+    total = Neighbours(zero, zero, zero)
+    for _, one in each_neighbour(situation, stand, number):
+        total = Neighbours(*(a + b for a, b in zip(total, one, strict=True)))
+    return total
+
+
+def each_neighbour(situation: Situation, stand: Stand, number: int) -> list[tuple[Any, Neighbours]]:
+    """The neighbours of that moment in the scenario's order, and the power of each as `interference` adds it.
 
     Each comes along its own line of sight, by the receive pattern's gain at its angle from the
     dish's axis, with its own E-vector carried to that axis. Its path fades as the wanted one's does.
+    Where phases are not known, or no turn changes anything, each counts as at its worst setting.
     """
-    zero = np.zeros(())
-    total = Neighbours(zero, zero, zero)
+    in_full = situation.scenario.decision.addition == "phasor" or situation.fixed[stand.moment][number] is not None
+    found = []
     for neighbour in situation.scenario.neighbours:
         if neighbour.when in ("both", stand.moment):
-            one = _one(situation, stand, number, neighbour)
-            total = Neighbours(*(a + b for a, b in zip(total, one, strict=True)))
-    return total
+            even, cosine, sine = _one(situation, stand, number, neighbour)
+            if in_full:
+                even, cosine, sine = even + np.hypot(cosine, sine), np.zeros(()), np.zeros(())
+            found.append((neighbour, Neighbours(even, cosine, sine)))
+    return found
 
 
 def _one(situation: Situation, stand: Stand, number: int, neighbour: object) -> Neighbours:

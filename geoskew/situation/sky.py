@@ -63,8 +63,7 @@ class SkyModel:
         return np.maximum(self._situation.view(moment).elevation, LOWEST_PATH_DEG)
 
     def _clear(self, moment: Moment, number: int) -> Sky:
-        carrier = self._situation.carriers(moment)[number]
-        gas = weather.clear_sky_gas(self._climates[carrier.frequency_ghz], self._elevation(moment))
+        gas = weather.clear_sky_gas(self.climate(moment, number), self._elevation(moment))
         return Sky(total=gas, radiating=gas, rain=np.zeros(()), depolarisation=np.asarray(np.inf))
 
     def tilt(self, moment: Moment, number: int) -> Array:
@@ -75,18 +74,27 @@ class SkyModel:
         skew = self._situation.view(moment).skew
         return 90.0 - skew if polarisation == "V" else -skew
 
-    def ladder(self, moment: Moment, number: int, percentages: Sequence[float]) -> list[Sky]:
-        """Attenuation exceeded for each of several percentages of an average year."""
-        carrier = self._situation.carriers(moment)[number]
-        elevation, tilt = self._elevation(moment), self.tilt(moment, number)
-        attenuations = weather.ladder(
-            self._climates[carrier.frequency_ghz],
-            elevation,
-            tilt,
+    def climate(self, moment: Moment, number: int) -> weather.Climate:
+        """What the maps say of the places, for one carrier's frequency."""
+        return self._climates[self._situation.carriers(moment)[number].frequency_ghz]
+
+    def contributions(
+        self, moment: Moment, number: int, percentages: Sequence[float]
+    ) -> tuple[weather.Attenuation, ...]:
+        """Rain, gas, cloud and scintillation apart, for each of several percentages of an average year."""
+        return weather.ladder(
+            self.climate(moment, number),
+            self._elevation(moment),
+            self.tilt(moment, number),
             percentages=percentages,
             diameter_m=self._situation.terminal("dish_m"),
             efficiency=self._situation.terminal("efficiency"),
         )
+
+    def ladder(self, moment: Moment, number: int, percentages: Sequence[float]) -> list[Sky]:
+        """Attenuation exceeded for each of several percentages of an average year."""
+        carrier = self._situation.carriers(moment)[number]
+        elevation, tilt = self._elevation(moment), self.tilt(moment, number)
         return [
             Sky(
                 total=one.total,
@@ -94,7 +102,7 @@ class SkyModel:
                 rain=one.rain,
                 depolarisation=self._depolarisation(one, elevation, tilt, carrier.frequency_ghz),
             )
-            for one in attenuations
+            for one in self.contributions(moment, number, percentages)
         ]
 
     @staticmethod
