@@ -157,7 +157,7 @@ def band_tags(layer: Layer, storage: Storage) -> dict[str, str]:
         tags["rounded_to"] = (
             f"{storage.step!r} {layer.unit}".strip() if storage.step else "not rounded (float32)"
         )
-    for code, name in layer.classes:
+    for code, name in layer.classes or (((0, "no"), (1, "yes")) if layer.kind == "flag" else ()):
         tags[f"class_{code}"] = name
     return tags
 
