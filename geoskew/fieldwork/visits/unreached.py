@@ -24,7 +24,7 @@ def reasons(
     *,
     interrupted: bool,
 ) -> tuple[list[dict[str, Any]], int]:
-    """One record (id, action, reason, lon, lat) a site that has to be visited and is not, and the missing crew days.
+    """List the sites that have to be visited and are not, and count the missing crew days.
 
     Crew days are counted by cutting the sites that are out of time, each given to its nearest crew, into
     further days of that crew. Sites beyond every crew's day are not counted: no number of days helps.

@@ -75,3 +75,10 @@ class CardFacts:
         """Whether the dish need not be moved: both satellites stand at one longitude."""
         gap = (self.incoming_longitude_deg - self.outgoing_longitude_deg + 180.0) % 360.0 - 180.0
         return abs(gap) < 1e-6
+
+    @property
+    def judged(self) -> str:
+        """Which margins decided, in words that follow "judged"."""
+        if self.judged_in == "rain" and self.availability_percent is not None:
+            return f"in rain at {self.availability_percent:g} % availability"
+        return "in rain" if self.judged_in == "rain" else "in clear sky"

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import unicodedata
 from pathlib import Path
 from typing import Final
 
@@ -35,12 +36,14 @@ class Glyphs:
         with TTFont(self.regular) as regular, TTFont(self.bold) as bold:
             self._characters = frozenset(regular.getBestCmap()) & frozenset(bold.getBestCmap())
         self._missing: dict[str, None] = {}
+        self._right_to_left = False
 
     def known(self, text: str) -> str:
         """The text with a box for each character that cannot be drawn; newlines become spaces."""
         return "".join(self._one(character) for character in text.replace("\r", " ").replace("\n", " "))
 
     def _one(self, character: str) -> str:
+        self._right_to_left |= unicodedata.bidirectional(character) in ("R", "AL")
         if character.isprintable() and ord(character) in self._characters:
             return character
         self._missing.setdefault(character)
@@ -56,10 +59,16 @@ class Glyphs:
         return cut + "…"
 
     def report(self) -> list[str]:
-        """One warning with every character that became a box."""
-        if not self._missing:
-            return []
-        names = [f"U+{ord(character):04X}" for character in self._missing]
-        more = f" and {len(names) - _MOST_REPORTED} more" if len(names) > _MOST_REPORTED else ""
-        listed = ", ".join(names[:_MOST_REPORTED]) + more
-        return [f"PDF cards: the font lacks {listed}; a box stands in the place of each"]
+        """Warnings: the characters that became boxes, and scripts that are not set as they should be."""
+        warnings = []
+        if self._missing:
+            names = [f"U+{ord(character):04X}" for character in self._missing]
+            more = f" and {len(names) - _MOST_REPORTED} more" if len(names) > _MOST_REPORTED else ""
+            listed = ", ".join(names[:_MOST_REPORTED]) + more
+            warnings.append(f"PDF cards: the font lacks {listed}; a box stands in the place of each")
+        if self._right_to_left:
+            warnings.append(
+                "PDF cards: text that runs from right to left stands letter by letter from the left; "
+                "print the HTML cards for it"
+            )
+        return warnings

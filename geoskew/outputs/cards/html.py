@@ -62,7 +62,7 @@ def pages(sheet: Sheet, facts: CardFacts) -> Iterator[str]:
 def _contents(sheet: Sheet, facts: CardFacts) -> Iterator[str]:
     yield f"<header class='front'>\n<h1>Job cards</h1>\n<p><bdi>{text(facts.title)}</bdi></p>\n"
     yield f"<p>Changeover {facts.changeover:%d %b %Y %H:%M} UTC, from <bdi>{text(facts.outgoing)}</bdi> "
-    yield f"to <bdi>{text(facts.incoming)}</bdi>. Margins judged {_judged(facts)}.</p>\n"
+    yield f"to <bdi>{text(facts.incoming)}</bdi>. Margins judged {facts.judged}.</p>\n"
     without = sum(len(group.notes) for group in sheet.others)
     yield f"<nav aria-label='Cards'><p>{len(sheet.cards)} cards, {without} sites without one.</p><ol>\n"
     for number, card in enumerate(sheet.cards, start=1):
@@ -72,23 +72,17 @@ def _contents(sheet: Sheet, facts: CardFacts) -> Iterator[str]:
     yield "</ol></nav>\n</header>\n"
 
 
-def _judged(facts: CardFacts) -> str:
-    if facts.judged_in == "rain" and facts.availability_percent is not None:
-        return f"in rain at {facts.availability_percent:g} % availability"
-    return "in rain" if facts.judged_in == "rain" else "in clear sky"
-
-
 def _card(number: int, card: Card, facts: CardFacts) -> str:
     visit = f"<p class='visit'>{line(card.visit)}</p>" if card.visit else ""
     marks = "".join(f"<li>{line(step)}</li>\n" for step in card.steps)
     dials = "".join(_dial(dial) for dial in card.dials)
     legend = "<p>dashed: now · solid: target · hatched: the wrong way</p>" if card.dials else ""
     notes = "".join(f"<p class='note'>{line(note)}</p>" for note in card.signal_notes)
-    cautions = "".join(f"<li>{text(words)}</li>" for words in card.cautions)
+    cautions = "".join(f"<li>{line((words,))}</li>" for words in card.cautions)
     blanks = "".join(f"<li>{text(words)}</li>" for words in card.write_back)
     who = f"<bdi class='id'>{text(card.site)}</bdi> <bdi>{text(card.name)}</bdi>"
     facts_of_site = _facts("Where", card.where) + _facts("What is mounted", card.mounted)
-    foot = f"<bdi>{text(facts.title)}</bdi> · margins judged {_judged(facts)} · {text(facts.edition)}"
+    foot = f"<bdi>{text(facts.title)}</bdi> · margins judged {facts.judged} · {text(facts.edition)}"
     return (
         f"<article id='card-{number}' data-site='{text(card.site)}' data-action='{text(card.action)}'>\n"
         f"<header><div class='who'><h2>{who}</h2>"

@@ -22,7 +22,8 @@ from geoskew.outputs.cards.words import Given, Line, Number, loud, plain
 _LEFT: Final = 14.0
 _TOP: Final = 11.0
 _WIDTH: Final = 210.0 - 2 * _LEFT
-_DIAL: Final = 60.0
+_DIAL: Final = 62.0
+_SMALLEST_DIAL: Final = 34.0
 # Longest text of one given cell on paper; the HTML cards show all of it.
 _LONGEST: Final = 110
 
@@ -79,7 +80,7 @@ def wrapped(
     """Rows of (text, bold) no wider than the room; a break falls between words, whatever their font."""
     row: list[tuple[str, bool]] = []
     used = 0.0
-    for word in _words(pieces):
+    for word in _words(pieces, room, width):
         wide = sum(width(text, bold) for text, bold in word)
         if row and used + wide > room:
             yield row
@@ -90,11 +91,17 @@ def wrapped(
         yield row
 
 
-def _words(pieces: Sequence[tuple[str, bool]]) -> Iterator[list[tuple[str, bool]]]:
-    """Words with the space behind them; a word may change its font in the middle."""
+def _words(
+    pieces: Sequence[tuple[str, bool]], room: float, width: Callable[[str, bool], float]
+) -> Iterator[list[tuple[str, bool]]]:
+    """Words with the space behind them; a word may change its font in the middle; overlong ones are cut."""
     word: list[tuple[str, bool]] = []
     for text, bold in pieces:
         for chunk in re.findall(r"[^ ]* |[^ ]+$", text):
+            while len(chunk) > 8 and width(chunk, bold) > room:
+                cut = max(8, int(len(chunk) * 0.9 * room / width(chunk, bold)))
+                yield [*word, (chunk[:cut], bold)]
+                word, chunk = [], chunk[cut:]
             word.append((chunk, bold))
             if chunk.endswith(" "):
                 yield word
@@ -161,7 +168,7 @@ def _card(page: Page, card: Card, facts: CardFacts) -> None:
     for caution in card.cautions:
         page.say((f"• {caution}",), 7.6)
     page.ln(1.0)
-    page.say((Given(facts.title), f" · margins judged in {facts.judged_in} · ", Given(facts.edition)), 6.5)
+    page.say((Given(facts.title), f" · margins judged {facts.judged} · ", Given(facts.edition)), 6.5)
 
 
 def _facts(page: Page, rows: tuple[tuple[str, Line], ...], width: float) -> None:
@@ -173,9 +180,12 @@ def _facts(page: Page, rows: tuple[tuple[str, Line], ...], width: float) -> None
 
 
 def _dials(page: Page, card: Card) -> None:
+    """Both dials, as large as what follows on the page allows."""
     if not card.dials:
         return
     top = page.get_y() + 1.0
+    below = 59.0 + 4.1 * len(card.signals) + 3.7 * (len(card.cautions) + 2 * len(card.signal_notes))
+    side = min(_DIAL, max(_SMALLEST_DIAL, page.h - page.b_margin - top - below))
     half = _WIDTH / 2.0
     captions = (
         "BEHIND the dish, looking towards the satellite",
@@ -183,11 +193,11 @@ def _dials(page: Page, card: Card) -> None:
     )
     for place, (dial, caption) in enumerate(zip(card.dials, captions, strict=True)):
         left = _LEFT + place * half
-        draw_dial(page, dial, x=left + (half - _DIAL) / 2.0, y=top, side=_DIAL)
+        draw_dial(page, dial, x=left + (half - side) / 2.0, y=top, side=side)
         page.set_font("body", "B", 7.8)
-        page.set_xy(left, top + _DIAL)
+        page.set_xy(left, top + side)
         page.cell(half, 3.6, caption, align="C")
-    page.set_y(top + _DIAL + 3.4)
+    page.set_y(top + side + 3.4)
     page.set_font("body", "", 7.2)
     page.cell(0, 3.4, "dashed: now  ·  solid: target  ·  hatched: the wrong way", align="C")
     page.ln(3.6)

@@ -115,7 +115,7 @@ def _turn(job: Job, way: Way) -> list[Line]:
             (
                 "Or, shorter: exchange the leads of the two ports and, from BEHIND, turn only ",
                 size("turn_with_swap", shorter.turn),
-                f" {sense_from_behind(shorter.turn)} (from IN FRONT {sense_from_front(shorter.turn)}). "
+                f" {sense_from_behind(shorter.turn)} (from IN FRONT: {sense_from_front(shorter.turn)}). "
                 "Then the V mark stands ",
                 *_leaning(fold(shorter.target), "target_with_swap", from_behind=True),
                 " seen from behind. One of the two, never both.",

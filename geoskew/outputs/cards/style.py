@@ -83,18 +83,25 @@ polygon.stop{fill:#8a8a8a}
 @page{size:A4;margin:11mm 12mm}
 html{font-size:8.3pt}
 body{line-height:1.25;max-width:none;padding:0}
-article{position:relative;border:0;padding:0;break-after:page;break-inside:avoid}
+article{position:relative;border:0;padding:0;break-after:page;break-inside:avoid;
+  height:274mm;overflow:hidden;display:flex;flex-direction:column}
+article>*{flex:none}
+article>.dials{flex:1 1 0;min-height:30mm;grid-template-rows:minmax(0,1fr) auto}
+figure{display:flex;flex-direction:column;min-height:0}
+figure svg{flex:1 1 0;min-height:0;max-width:none}
 .front{break-after:page}
 .front ol{max-height:none}
 .front a{min-height:0;line-height:1.3}
 .facts{grid-template-columns:1fr 1fr}
 .dials{grid-template-columns:1fr 1fr;margin:0}
 .back ul{grid-template-columns:1fr 1fr;gap:.1rem 1.2rem}
-figure svg{max-width:49mm}
 .dials{gap:.1rem .6rem}
-.care ul{columns:2}
+.care ul{columns:2;column-gap:1.8rem}
 h3{margin:.4rem 0 .1rem}
 h2,dd,footer{overflow:hidden}
+h2{max-height:2.4em}
+dd{max-height:3.8em}
+footer{max-height:2.6em}
 .square{position:absolute;top:0;right:0;width:25mm}
 .who,.facts{padding-right:27mm}
 .others{border:0;padding:0}

@@ -3,6 +3,6 @@
 from __future__ import annotations
 
 from geoskew.outputs.visits.sheet import VisitSheets
-from geoskew.outputs.visits.write import ENDINGS, write_visits
+from geoskew.outputs.visits.write import ENDINGS, require_known_ending, write_visits
 
-__all__ = ["ENDINGS", "VisitSheets", "write_visits"]
+__all__ = ["ENDINGS", "VisitSheets", "require_known_ending", "write_visits"]

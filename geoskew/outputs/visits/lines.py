@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Final
 
 from geoskew.outputs import geopackage
 from geoskew.outputs.geopackage import About
@@ -11,6 +11,10 @@ from geoskew.outputs.visits.sheet import MEANINGS, VisitSheets, stops
 
 if TYPE_CHECKING:
     import pandas
+
+_NUMBERS: Final = (
+    "turn", "km_leg", "lon", "lat", "km", "base_lon", "base_lat", "weight", "fail_probability",
+)  # fmt: skip
 
 
 def write_lines(part: Path, sheets: VisitSheets) -> None:
@@ -69,7 +73,7 @@ def _add(
     import pyarrow
     import shapely
 
-    columns = {str(name): pyarrow.array(table[name].tolist(), _type(str(name))) for name in table.columns}
+    columns = {str(name): _column(table, str(name)) for name in table.columns}
     columns["geom"] = pyarrow.array(list(shapely.to_wkb(geometry)), pyarrow.binary())
     geopackage.add_layer(
         part,
@@ -82,13 +86,17 @@ def _add(
     )
 
 
-def _type(name: str) -> Any:
-    """The type of a column, the same whether the table has rows or not."""
+def _column(table: pandas.DataFrame, name: str) -> Any:
+    """A column with its type, the same whether the table has rows or not."""
+    import pandas
     import pyarrow
 
     if name == "day":
-        return pyarrow.date32()
+        return pyarrow.array(table[name].tolist(), pyarrow.date32())
     if name in ("order", "visits"):
-        return pyarrow.int64()
-    numbers = ("turn", "km_leg", "lon", "lat", "km", "base_lon", "base_lat", "weight", "fail_probability")
-    return pyarrow.float64() if name in numbers else pyarrow.string()
+        return pyarrow.array(table[name].tolist(), pyarrow.int64())
+    if name in _NUMBERS:
+        numbers = pandas.to_numeric(table[name], errors="coerce").to_numpy(dtype=float)
+        return pyarrow.array(numbers, from_pandas=True)
+    words = [None if pandas.isna(value) else str(value) for value in table[name]]
+    return pyarrow.array(words, pyarrow.string())

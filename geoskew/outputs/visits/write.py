@@ -42,7 +42,7 @@ def require_known_ending(path: Path) -> None:
 
 
 def write_visits(path: Path, sheets: VisitSheets) -> None:
-    """Write the plan: ``.csv`` and ``.xlsx`` day sheets, ``.gpkg`` driving lines and stops, ``.ics`` calendar.
+    """Write the plan: day sheets (.csv, .xlsx), driving lines and stops (.gpkg), or a calendar (.ics).
 
     Raises
     ------
