@@ -82,9 +82,7 @@ class View:
         if self._coverage is not None:
             level = self._coverage.eirp(self.places.longitude, self.places.latitude)
         elif satellite.beams:
-            from geoskew.coverage import strongest
-
-            level, _ = strongest(self._beam_levels)
+            level, _ = self.strongest_beam
         else:
             level = np.asarray(satellite.eirp_dbw, dtype=np.float64)
         return np.asarray(level + satellite.eirp_offset_db)
@@ -101,8 +99,15 @@ class View:
         from geoskew.coverage import beam_isolation
 
         leaves = [beam_isolation(*where, **_ellipse(beam)) for beam, where in self._beams]
-        serving = np.argmax(np.nan_to_num(np.stack(np.broadcast_arrays(*self._beam_levels)), nan=-np.inf), axis=0)
-        return np.minimum(stated, np.choose(serving, np.broadcast_arrays(*leaves)))
+        serving = np.maximum(self.strongest_beam[1], 0)
+        return np.asarray(np.minimum(stated, np.choose(serving, np.broadcast_arrays(*leaves))))
+
+    @cached_property
+    def strongest_beam(self) -> tuple[Array, NDArray[np.intp]]:
+        """EIRP of the strongest beam at each place without the offset, dBW, and its number from 0; NaN and −1: none."""
+        from geoskew.coverage import strongest
+
+        return strongest(self._beam_levels)
 
     @cached_property
     def _beams(self) -> list[tuple[Any, tuple[Array, Array]]]:
