@@ -6,6 +6,7 @@ import sys
 import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
+from pathlib import Path
 from typing import Final
 
 # Without a terminal: one line in this many seconds, so that a log shows that work goes on.
@@ -61,3 +62,14 @@ def say(text: str, *, quiet: bool = False) -> None:
     """One line on standard error."""
     if not quiet:
         print(f"geoskew: {text}", file=sys.stderr)
+
+
+def tell_rejected(study: object, folder: Path, *, quiet: bool = False) -> None:
+    """One line on rows that could not be used."""
+    scenario = study.scenario  # type: ignore[attr-defined]  # a Study; naming it would import everything
+    if scenario.sites is None:
+        return
+    rejected = study.sites.rejected  # type: ignore[attr-defined]
+    if rejected:
+        rows = "row" if len(rejected) == 1 else "rows"
+        say(f"{len(rejected)} {rows} of {scenario.sites.file.name} could not be used; see {folder / 'rejected.csv'}")

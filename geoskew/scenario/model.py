@@ -97,6 +97,20 @@ class Scenario(Table):
         """SHA-256 of the scenario's content and of every input file; comments and place do not count."""
         return checksums.of_scenario(self, self.input_files, self.path.parent)
 
+    def require_any(self, *parts: str, for_what: str) -> None:
+        """Refuse a job that needs one of several parts when all of them are missing.
+
+        Raises
+        ------
+        MissingPartError
+            Names the parts and how to give them.
+        """
+        if not any(getattr(self, part) for part in parts):
+            ways = ", or ".join(PARTS[part] for part in parts)
+            raise MissingPartError(
+                Problem(f"{for_what} needs one of {', '.join(parts)}: add {ways}", file=self.path)
+            )
+
     def require(self, *parts: str, for_what: str) -> None:
         """Refuse a job whose parts are missing.
 

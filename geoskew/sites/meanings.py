@@ -50,6 +50,7 @@ PLACE_COLUMNS: Final = (
     *(key for key in NUMBERS if key in Terminal.model_fields),
     "setting_deg",
     "antenna_height_m",
+    "scale_zero_deg",
 )
 
 

@@ -37,8 +37,8 @@ def text_codes(values: Sequence[str]) -> tuple[NDArray[Any], list[str]]:
 def as_text(column: pd.Series) -> list[str]:
     """Cells as a reader would write them: empty for no value, whole numbers without a point."""
     out = []
-    for value in column.tolist():
-        if value is None or value != value or str(value) in ("<NA>", "NaT"):
+    for value, missing in zip(column.tolist(), column.isna(), strict=True):
+        if missing:
             out.append("")
         elif isinstance(value, float) and value.is_integer() and abs(value) < 1e15:
             out.append(str(int(value)))

@@ -1,0 +1,27 @@
+"""``geoskew check``."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import click
+
+from geoskew.cli import console, options
+
+
+@click.command("check", epilog="Example: geoskew check plan.toml")
+@options.scenario
+@options.common
+def command(scenario: Path, quiet: bool, verbose: bool, debug: bool) -> int:
+    """Read and validate all inputs, compute nothing; say what 'run' would write."""
+    from geoskew.study.check import check
+
+    problems, lines = check(scenario)
+    for problem in problems:
+        console.say(str(problem))
+    if problems:
+        console.say(f"{len(problems)} problem{'s' if len(problems) > 1 else ''} found")
+        return 2
+    for line in lines:
+        click.echo(line)
+    return 0

@@ -1,0 +1,47 @@
+"""``geoskew contours``."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import click
+
+from geoskew.cli import console, options
+
+
+@click.command("contours", epilog="Example: geoskew contours plan.toml --out skew.gpkg --layer skew_after --every 2")
+@options.scenario
+@options.out_file(".gpkg")
+@options.layer
+@click.option(
+    "--every",
+    type=float,
+    default=None,
+    metavar="STEP",
+    help="Distance between levels, in the layer's unit. [each layer's own]",
+)
+@options.overwrite
+@options.common
+def command(
+    scenario: Path,
+    out: Path,
+    layers: tuple[str, ...],
+    every: float | None,
+    overwrite: bool,
+    quiet: bool,
+    verbose: bool,
+    debug: bool,
+) -> None:
+    """Isolines of layers as vector lines with their level, one GeoPackage layer each."""
+    from geoskew.outputs.files import require_free
+    from geoskew.study.core import Study
+    from geoskew.study.rasters import write_study_contours
+
+    study = Study(scenario, needs_sites=False)
+    study.scenario.require("region", for_what="contours")
+    require_free([out], overwrite=overwrite)
+    with console.progress(quiet=quiet) as report:
+        remarks = write_study_contours(study, out, layers or None, every=every, report=report)
+    for remark in remarks:
+        console.say(remark, quiet=quiet)
+    console.say(f"wrote {out}", quiet=quiet)
