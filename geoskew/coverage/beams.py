@@ -170,7 +170,8 @@ def relative_gain(
     Returns
     -------
     ndarray
-        dB, at most 0, never below 0 dBi (minus the gain on the axis), the broadcast shape; NaN for NaN.
+        dB, at most 0, beyond the half-power ellipse never below 0 dBi (minus the gain on the axis), the
+        broadcast shape; NaN for NaN.
 
     Raises
     ------
@@ -188,7 +189,10 @@ def relative_gain(
     width = half_power_width(
         position_angle, major_deg=major_deg, minor_deg=minor_deg, orientation_deg=orientation_deg
     )
-    return np.maximum(shapes[pattern](off_axis, width), -max(on_axis_gain(major_deg, minor_deg), 0.0))
+    gain = shapes[pattern](off_axis, width)
+    # The Annex draws its floor through the side lobes; the cross-polar dip around the axis stays.
+    floor = -max(on_axis_gain(major_deg, minor_deg), 0.0)
+    return np.where(_ratio(off_axis, width) > 1.0, np.maximum(gain, floor), gain)
 
 
 def beam_eirp(

@@ -114,7 +114,7 @@ def faces_of(lines: Sequence[Feature]) -> list[Face]:
     refuse_gaps(lines, hull)
     areas = _cut(lines, hull)
     borders = _borders(areas, lines)
-    _refuse_disorder(lines, areas, borders)
+    _refuse_disorder(lines, borders)
     levels = sorted({line.level for line in lines})
     return [
         _face(area, border, areas, borders, lines, levels, hull)
@@ -160,13 +160,17 @@ def _middles(line: Any) -> NDArray[np.float64]:
     return np.asarray(0.5 * (points[1:] + points[:-1]))
 
 
-def _refuse_disorder(
-    lines: Sequence[Feature], areas: Sequence[Any], borders: Sequence[frozenset[int]]
-) -> None:
-    import shapely
+def _refuse_disorder(lines: Sequence[Feature], borders: Sequence[frozenset[int]]) -> None:
+    """Refuse levels that do not follow each other from the outside in."""
+    problems = [*_leaps(lines, borders), *_turned_round(lines)]
+    if problems:
+        raise InputError([Problem(text) for text in dict.fromkeys(problems)])
 
+
+def _leaps(lines: Sequence[Feature], borders: Sequence[frozenset[int]]) -> list[str]:
+    """Faces between two levels that are not neighbours."""
     levels = sorted({line.level for line in lines})
-    problems: list[str] = []
+    problems = []
     for border in borders:
         ranks = sorted(border, key=lambda number: lines[number].level)
         if len(ranks) < 2:
@@ -179,23 +183,27 @@ def _refuse_disorder(
                 f"{high} follows {low} without a contour of {missing} dBW between them: levels out of"
                 " order; check the levels or complete the contours"
             )
+    return problems
+
+
+def _turned_round(lines: Sequence[Feature]) -> list[str]:
+    """Closed contours that lie within an outermost one of a higher level."""
+    import shapely
+
     closed = [line for line in lines if line.geometry.is_closed]
+    if not closed:
+        return []
     discs = [shapely.Polygon(line.geometry) for line in closed]
-    tree = shapely.STRtree(discs)
-    inner, outer = tree.query(discs, predicate="within")
-    around: dict[int, list[int]] = {}
-    for first, second in zip(inner, outer, strict=True):
-        if first != second:
-            around.setdefault(int(first), []).append(int(second))
-    for first, rings in around.items():
-        outermost = max(rings, key=lambda number: discs[number].area)
-        if closed[first].level < closed[outermost].level:
-            problems.append(
-                f"{closed[first]} lies within {closed[outermost]}: levels out of order; the outermost contour"
-                " has the lowest level, so check the levels"
-            )
-    if problems:
-        raise InputError([Problem(text) for text in dict.fromkeys(problems)])
+    outermost = list(range(len(closed)))
+    for inner, outer in zip(*shapely.STRtree(discs).query(discs, predicate="within"), strict=True):
+        if discs[outer].area > discs[outermost[inner]].area:
+            outermost[inner] = outer
+    return [
+        f"{line} lies within {closed[outer]}: levels out of order; the outermost contour has the lowest"
+        " level, so check the levels"
+        for line, outer in zip(closed, outermost, strict=True)
+        if line.level < closed[outer].level
+    ]
 
 
 def _face(

@@ -17,11 +17,11 @@ from geoskew.coverage.spline import Lattice, Surface, ThinPlate
 Array = NDArray[np.float64]
 
 # Cells along the longer side of the map: enough for a gap between contours to hold two of them. The
-# second number of the most is tried where the first misses a level by more than the misfit.
+# second number of the most serves maps so steep that the first fit misses a level by more than the misfit.
 FEWEST_CELLS: Final = 48
-MOST_CELLS: Final = (96, 144)
-MISFIT_DB: Final = 0.03
-# The natural rise of summits is read off a coarser fit, of this many times the step.
+MOST_CELLS: Final = (96, 128)
+MISFIT_DB: Final = 0.1
+# The first fit, off which the natural rise of summits is read, has a lattice of this many times the step.
 COARSER: Final = 1.6
 # Points along a contour, lattice steps apart.
 SPACING: Final = 0.4
@@ -29,6 +29,9 @@ SPACING: Final = 0.4
 REACH_GAPS: Final = 1.5
 # A bound counts as kept when the surface passes it by less than this share of a contour step.
 SLACK: Final = 0.01
+# Tension of a face whose bounds are passed: first, factor of the next rounds, last. At the last one the
+# plate is a membrane, which has no hills or hollows of its own.
+TENSION: Final = (0.3, 8.0, 19.0)
 # Weight of a passed bound against 1 of a point on a contour, and the most rounds of holding.
 PENALTY: Final = 3.0
 ROUNDS: Final = 8
@@ -103,16 +106,11 @@ class Fitting:
         """Fit the surface; also give the largest misfit along the contours, dB."""
         for most_cells in MOST_CELLS:
             self.lattice = self._lattice(most_cells)
-            surface, misfit = self._fitted(self._lattice(most_cells, COARSER))
-            if misfit <= MISFIT_DB:
+            x, y, values = self._along()
+            coarse = ThinPlate(self._lattice(most_cells, COARSER)).solve(x, y, values, np.ones(x.size))
+            if np.abs(coarse.values(x, y) - values).max() <= MISFIT_DB:
                 break
-        return surface, misfit
-
-    def _fitted(self, coarser: Lattice) -> tuple[Surface, float]:
-        """Fit over the present lattice, the rise of summits read off a coarser one."""
-        x, y, values = self._along()
         samples = self._samples()
-        coarse = ThinPlate(coarser).solve(x, y, values, np.ones(x.size))
         added = self._summits(coarse, samples)
         data = [np.concatenate([old, new]) for old, new in zip((x, y, values), added, strict=True)]
         surface = self._held(ThinPlate(self.lattice), samples, data)
@@ -189,12 +187,11 @@ class Fitting:
 
     def _held(self, plate: ThinPlate, samples: Samples, data: list[Array]) -> Surface:
         """Fit, and hold the surface to the bounds of its faces with one-sided penalties, round by round."""
-        slack = SLACK * min(np.diff(self.levels))
         x, y, wanted = data
-        surface = plate.solve(x, y, wanted, np.ones(x.size))
+        slack = SLACK * min(np.diff(self.levels))
+        plate, surface = self._tightened(plate, samples, data, slack)
         for _ in range(ROUNDS):
-            values = surface.values(samples.x, samples.y)
-            over = np.nan_to_num(np.maximum(values - samples.high, samples.low - values))
+            over, values = _excess(surface, samples)
             if over.max() <= slack:
                 break
             passed = np.flatnonzero(over > 0.0)
@@ -207,6 +204,28 @@ class Fitting:
             )
         return surface
 
+    def _tightened(
+        self, plate: ThinPlate, samples: Samples, data: list[Array], slack: float
+    ) -> tuple[ThinPlate, Surface]:
+        """Fit, with more and more tension in the faces between two contours whose bounds are passed."""
+        x, y, wanted = data
+        between = np.array([face.kind == "between" for face in self.faces])
+        tension = np.zeros(len(self.faces))
+        current = plate
+        while True:
+            surface = current.solve(x, y, wanted, np.ones(x.size))
+            over, values = _excess(surface, samples)
+            bad = np.unique(samples.face[(over > slack) & (samples.face >= 0)])
+            tense = np.flatnonzero(tension > 0.0)
+            bad = np.union1d(bad, tense[np.isin(tense, samples.face[_extremes(values, samples)])])
+            bad = bad[between[bad] & (tension[bad] < TENSION[2])]
+            if bad.size == 0:
+                return current, surface
+            tension[bad] = np.clip(tension[bad] * TENSION[1], TENSION[0], TENSION[2])
+            stretched = np.flatnonzero((samples.face >= 0) & (tension[samples.face] > 0.0))
+            here = tension[samples.face[stretched]]
+            current = plate.stretched(samples.x[stretched], samples.y[stretched], here)
+
     def outside(self) -> Array:
         """Distance from the contoured area at the lattice nodes (rows, columns), negative inside of it."""
         import shapely
@@ -218,6 +237,23 @@ class Fitting:
         shapely.prepare(self.known)
         inside = shapely.contains_xy(self.known, x.ravel(), y.ravel())
         return np.asarray(np.where(inside, -distance, distance).reshape(x.shape))
+
+
+def _excess(surface: Surface, samples: Samples) -> tuple[Array, Array]:
+    """How far a surface passes the bounds at the samples, dB, negative within them; and its values."""
+    values = surface.values(samples.x, samples.y)
+    return np.nan_to_num(np.maximum(values - samples.high, samples.low - values)), values
+
+
+def _extremes(values: Array, samples: Samples) -> NDArray[np.bool_]:
+    """Samples higher or lower than all eight around them, all nine within one face."""
+    from scipy.ndimage import maximum_filter, minimum_filter
+
+    shape = (-1, int(np.flatnonzero(np.diff(samples.y))[0]) + 1)
+    field, face = values.reshape(shape), samples.face.reshape(shape)
+    extreme = (field == maximum_filter(field, 3)) | (field == minimum_filter(field, 3))
+    whole = maximum_filter(face, 3) == minimum_filter(face, 3)
+    return np.asarray((extreme & whole).ravel(), dtype=np.bool_)
 
 
 def bend(rise: Array, natural: float, limit: float) -> Array:

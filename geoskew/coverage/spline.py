@@ -11,7 +11,7 @@ so that it looks smooth at any resolution.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -67,6 +67,13 @@ def cubic_weights(offset: Array) -> Array:
     ) / 6.0
 
 
+def cubic_slopes(offset: Array) -> Array:
+    """Slopes of `cubic_weights`, to a lattice step: (..., 4)."""
+    t = offset[..., None]
+    s = 1.0 - t
+    return np.concatenate([-(s**2), 3.0 * t**2 - 4.0 * t, 4.0 * s - 3.0 * s**2, t**2], axis=-1) / 2.0
+
+
 def _cells(position: Array, count: int) -> tuple[NDArray[np.intp], Array]:
     """Cell number and offset within it of positions in lattice steps; `count` coefficients."""
     cell = np.clip(np.floor(position), 0, count - 4).astype(np.intp)
@@ -82,13 +89,18 @@ def line_basis(position: Array, count: int) -> Array:
     return basis
 
 
-def design(lattice: Lattice, x: Array, y: Array) -> object:
-    """Sparse matrix (N, rows·columns) of the B-splines' values at points (N,) inside the rectangle."""
+def design(lattice: Lattice, x: Array, y: Array, *, slope: str = "") -> Any:
+    """Sparse matrix (N, rows·columns) of the B-splines' values at points (N,) inside the rectangle.
+
+    With slope "x" or "y" that of their slopes in this direction, to a lattice step.
+    """
     from scipy.sparse import csr_matrix
 
     column, offset_x = _cells((x - lattice.west) / lattice.step, lattice.columns)
     row, offset_y = _cells((y - lattice.south) / lattice.step, lattice.rows)
-    weights = cubic_weights(offset_y)[:, :, None] * cubic_weights(offset_x)[:, None, :]
+    weights_x = cubic_slopes(offset_x) if slope == "x" else cubic_weights(offset_x)
+    weights_y = cubic_slopes(offset_y) if slope == "y" else cubic_weights(offset_y)
+    weights = weights_y[:, :, None] * weights_x[:, None, :]
     first = row[:, None, None] + np.arange(4)[None, :, None]
     second = column[:, None, None] + np.arange(4)[None, None, :]
     index = first * lattice.columns + second
@@ -106,7 +118,7 @@ def _overlaps(count: int) -> tuple[Array, Array, Array]:
     t, gauss = 0.5 * (nodes + 1.0), 0.5 * gauss
     s = 1.0 - t
     value = cubic_weights(t)
-    slope = np.stack([-(s**2), 3 * t**2 - 4 * t, -(3 * s**2 - 4 * s), t**2], axis=-1) / 2.0
+    slope = cubic_slopes(t)
     bend = np.stack([s, 3 * t - 2, 3 * s - 2, t], axis=-1)
     result = []
     for basis in (value, slope, bend):
@@ -118,7 +130,7 @@ def _overlaps(count: int) -> tuple[Array, Array, Array]:
     return result[0], result[1], result[2]
 
 
-def bending_energy(lattice: Lattice) -> object:
+def bending_energy(lattice: Lattice) -> Any:
     """Sparse matrix of ∫(f_xx² + 2·f_xy² + f_yy²), coordinates in lattice steps."""
     from scipy.sparse import csr_matrix, kron
 
@@ -200,17 +212,31 @@ class ThinPlate:
 
     def __init__(self, lattice: Lattice) -> None:
         self.lattice = lattice
-        self._energy = BENDING * bending_energy(lattice)  # type: ignore[operator]
+        self._energy = BENDING * bending_energy(lattice)
+
+    def stretched(self, x: Array, y: Array, tension: Array) -> ThinPlate:
+        """Give the same plate under tension around raster points (N,), two to a lattice step.
+
+        The tension is the weight of |∇f|² against that of the bending, lattice steps as unit of length.
+        """
+        plate = ThinPlate.__new__(ThinPlate)
+        plate.lattice = self.lattice
+        weights = 0.25 * BENDING * tension
+        plate._energy = self._energy
+        for slope in ("x", "y"):
+            matrix = design(self.lattice, x, y, slope=slope)
+            plate._energy = plate._energy + matrix.T.multiply(weights).tocsr() @ matrix
+        return plate
 
     def solve(self, x: Array, y: Array, values: Array, weights: Array) -> Surface:
-        """Surface of least bending and weighted misfit to values at points (N,).
+        """Find the surface of least bending and weighted misfit to values at points (N,).
 
         Three points not on one line must be among them.
         """
         from scipy.sparse.linalg import splu
 
         matrix = design(self.lattice, x, y)
-        weighted = matrix.T.multiply(weights).tocsr()  # type: ignore[attr-defined]
+        weighted = matrix.T.multiply(weights).tocsr()
         system = (weighted @ matrix + self._energy).tocsc()
         # Symmetric and positive definite: an order that keeps the factor thin, no pivoting.
         factor = splu(
