@@ -25,6 +25,9 @@ Array = NDArray[np.float64]
 WHOLE_CIRCLE: Final = 90.0
 EMPTY_ARC: Final = -1.0
 
+# Worst phasors may leave nothing of the wanted carrier; −120 dB stands for that: every margin is a number.
+LEAST_WANTED: Final = 1e-12
+
 
 def carrier_to_noise(
     eirp_dbw: ArrayLike, *, losses_db: ArrayLike, figure_of_merit_db: ArrayLike, symbol_rate_mbaud: ArrayLike
@@ -43,8 +46,10 @@ def carrier_to_noise(
         Mbaud. The noise bandwidth is the symbol rate, so this is Es/N0 as well.
     """
     rate_db = 60.0 + 10.0 * np.log10(np.asarray(symbol_rate_mbaud, dtype=np.float64))
-    budget = np.asarray(eirp_dbw, dtype=np.float64) - losses_db + figure_of_merit_db
-    return np.asarray(budget + BOLTZMANN_DB - rate_db)
+    eirp, losses, merit = (
+        np.asarray(term, dtype=np.float64) for term in (eirp_dbw, losses_db, figure_of_merit_db)
+    )
+    return np.asarray(eirp - losses + merit + BOLTZMANN_DB - rate_db)
 
 
 def ratio(decibels: ArrayLike) -> Array:
@@ -110,7 +115,7 @@ class Response:
         return 0.5 * (1.0 + self.leak), 0.5 * (1.0 - self.leak)
 
     def at(self, setting: ArrayLike) -> tuple[Array, Array, Array]:
-        """Angle d in radians and the factors on the wanted and the crossed carrier, at settings in degrees."""
+        """Angle d in radians, and the factors on the wanted and the crossed carrier; settings in degrees."""
         middle, swing = self._factors()
         if self.fixed is not None:
             d = np.full(np.shape(self.suits), np.deg2rad(self.fixed))
@@ -122,14 +127,14 @@ class Response:
         wanted = middle + swing * cosine
         if self.phasors:
             wanted = np.where(theta >= np.pi, 0.0, wanted)
-        return d, wanted, middle - swing * cosine
+        return d, np.maximum(wanted, LEAST_WANTED), middle - swing * cosine
 
     def inverse_ratio(self, setting: ArrayLike) -> Array:
         """(N+I)/C at settings in degrees."""
         d, wanted, crossed = self.at(setting)
-        neighbours = self.neighbour_even + self.neighbour_cosine * np.cos(2.0 * d) + self.neighbour_sine * np.sin(2.0 * d)
-        with np.errstate(divide="ignore"):
-            return np.asarray(self.uplink + (self.noise + self.crossed * crossed + neighbours) / wanted)
+        neighbours = self.neighbour_cosine * np.cos(2.0 * d) + self.neighbour_sine * np.sin(2.0 * d)
+        neighbours = neighbours + self.neighbour_even
+        return np.asarray(self.uplink + (self.noise + self.crossed * crossed + neighbours) / wanted)
 
     def margin(self, setting: ArrayLike) -> Array:
         """Margin in dB at settings in degrees; NaN where `suits` or the carrier has no value."""
@@ -152,19 +157,24 @@ class Response:
         level = np.asarray(level_db, dtype=np.float64)
         allowed = ratio(-(level + self.required_db)) - self.uplink
         if self.fixed is not None:
-            good = self.inverse_ratio(0.0) - self.uplink <= allowed
-            width = np.where(good, WHOLE_CIRCLE, EMPTY_ARC)
-            return np.zeros_like(width), np.where(np.isnan(self.suits), np.nan, width)
+            inverse_downlink = self.inverse_ratio(0.0) - self.uplink
+            width = np.where(inverse_downlink <= allowed, WHOLE_CIRCLE, EMPTY_ARC)
+            return np.zeros_like(width), np.where(np.isnan(inverse_downlink), np.nan, width)
         middle, swing = self._factors()
         constant = self.noise + self.crossed * middle + self.neighbour_even - allowed * middle
         cosine = self.neighbour_cosine - swing * (self.crossed + allowed)
         if self.phasors:
             return self.suits, _half_width(constant, -cosine, 2.0 * self._phase())
-        if np.ndim(self.neighbour_sine) == 0 and self.neighbour_sine == 0.0:
+        if _is_zero(self.neighbour_sine) and _is_zero(self.neighbour_cosine):
             return self.suits, _half_width(constant, -cosine, np.zeros(())) + 0.0 * self.suits
         size = np.hypot(cosine, self.neighbour_sine)
         offset = 0.5 * np.arctan2(-np.asarray(self.neighbour_sine), -cosine)
         return self.suits + np.rad2deg(offset), _half_width(constant, size, np.zeros(())) + 0.0 * self.suits
+
+
+def _is_zero(value: Array | float) -> bool:
+    """Whether a term is the plain number 0."""
+    return np.ndim(value) == 0 and float(value) == 0.0
 
 
 def _half_width(constant: Array, size: Array, phase: Array) -> Array:

@@ -11,12 +11,13 @@ from dataclasses import dataclass
 from typing import Final, NamedTuple
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from geoskew.angles import fold
 from geoskew.link import WHOLE_CIRCLE, Array, Response, merged_arcs
 
-# The excess is found to this: some 1e-6° of a curve's flank. At a smooth peak the middle of what is left is taken.
+# The excess is found to this: some 1e-6° of a curve's flank. At a smooth peak the middle of what is left is
+# taken.
 EXCESS_TOLERANCE_DB: Final = 1e-8
 # Enough to halve 200 dB down to the tolerance.
 MOST_STEPS: Final = 40
@@ -26,6 +27,9 @@ TIE_DEG: Final = 1e-6
 
 # Below the level found the arcs overlap by more than rounding: 1e-9 dB is some 1e-9° of a curve's flank.
 BACK_OFF_DB: Final = 1e-9
+
+# The end of one arc counts as within another that ends there as well, whatever rounding says.
+ARC_ROUNDING_DEG: Final = 1e-9
 
 # The least excess worth telling apart; it bounds the search from below, not the results.
 LOWEST_EXCESS_DB: Final = -200.0
@@ -53,7 +57,7 @@ class Shared:
 
 
 def held_to(best: ArrayLike, *, reserve_db: float, allowed_loss_db: float) -> Array:
-    """What a moment is held to, dB: the reserve, or where even the best misses it, the best less what is allowed."""
+    """What a moment is held to, dB: the reserve; where the best misses it, the best less what is allowed."""
     best = np.asarray(best, dtype=np.float64)
     return np.where(best < reserve_db, best - allowed_loss_db, np.where(np.isnan(best), np.nan, reserve_db))
 
@@ -69,12 +73,14 @@ def _arcs(curves: Sequence[Curve], level: Array) -> tuple[list[Array], list[Arra
     return [middle for middle, _ in arcs], [half for _, half in arcs]
 
 
-def _in_all(setting: Array, middles: Sequence[Array], halves: Sequence[Array], skip: int) -> Array:
+def _in_all(
+    setting: Array, middles: Sequence[Array], halves: Sequence[Array], skip: int
+) -> NDArray[np.bool_]:
     """Whether a setting is in every arc but number `skip` (where it is an end, rounding must not decide)."""
     good = np.ones(np.shape(setting), dtype=bool)
     for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
         if number != skip:
-            good = good & (np.abs(fold(setting - middle)) <= half)
+            good = good & (np.abs(fold(setting - middle)) <= half + ARC_ROUNDING_DEG)
     return good
 
 
@@ -125,7 +131,7 @@ def _search(curves: Sequence[Curve], shape: tuple[int, ...]) -> Array:
         value_high = np.where(met, 0.5 * value_high, value)
         value_low = np.where(met, value, 0.5 * value_low)
         low, high = np.where(met, middle, low), np.where(met, high, middle)
-    return low
+    return np.asarray(low)
 
 
 def _place_in_arcs(curves: Sequence[Curve], level: Array, present: Array) -> Array:
@@ -135,19 +141,53 @@ def _place_in_arcs(curves: Sequence[Curve], level: Array, present: Array) -> Arr
     upper end above that.
     """
     middles, halves = _arcs(curves, level)
+    flat = _flat(curves, level)
     best = np.full(np.shape(level), np.nan)
     for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
         start = middle - half
         reach = np.full(np.shape(level), np.inf)
-        for other_middle, other_half in zip(middles, halves, strict=True):
+        for other, (other_middle, other_half) in enumerate(zip(middles, halves, strict=True)):
             ahead = np.mod(other_middle + other_half - start, 180.0)
+            if other != number:
+                # An arc that ends where this one begins, not one that reaches half a turn further.
+                ahead = np.where(ahead > 180.0 - TIE_DEG, 0.0, ahead)
             reach = np.where(other_half >= WHOLE_CIRCLE, reach, np.minimum(reach, ahead))
         good = (half < WHOLE_CIRCLE) & (half >= 0.0) & _in_all(start, middles, halves, number)
-        turn = fold(start + 0.5 * np.where(np.isfinite(reach), reach, 0.0) - present)
+        turn = _turn_into_part(start - present, np.where(np.isfinite(reach), reach, 0.0), flat)
         better = np.isnan(best) | (np.abs(turn) < np.abs(best) - TIE_DEG)
         clockwise = (np.abs(np.abs(turn) - np.abs(best)) <= TIE_DEG) & (turn > best)
         best = np.where(good & (better | clockwise), turn, best)
-    return best
+    # All settings are alike where every arc is the whole circle, and where no level is low enough.
+    whole = np.logical_and.reduce(np.broadcast_arrays(*(half >= WHOLE_CIRCLE for half in halves)))
+    alike = np.isnan(best) & (whole | (level <= LOWEST_EXCESS_DB))
+    return np.where(alike, 0.0 * present, best)
+
+
+def _flat(curves: Sequence[Curve], level: Array) -> NDArray[np.bool_]:
+    """Where a curve binds that no setting changes (circular polarisation): a whole part is best."""
+    flat = np.zeros(np.shape(level), dtype=bool)
+    for response, held in curves:
+        if response.fixed is not None:
+            flat = flat | (response.margin(0.0) - held <= level + 4.0 * EXCESS_TOLERANCE_DB)
+    return flat
+
+
+def _turn_into_part(start: Array, reach: Array, flat: NDArray[np.bool_]) -> Array:
+    """The turn into the part of good settings that begins at the turn `start` and is `reach` degrees wide.
+
+    To its middle, where the one best setting is; where all of it is `flat`, the smallest turn, and of two
+    alike the clockwise one.
+    """
+    middle = fold(start + 0.5 * reach)
+    if not np.any(flat):
+        return middle
+    low = fold(start)
+    high = low + reach
+    other = fold(high)
+    nearest = np.where(np.abs(np.abs(low) - np.abs(other)) <= TIE_DEG, np.maximum(low, other), other)
+    nearest = np.where(np.abs(low) < np.abs(other) - TIE_DEG, low, nearest)
+    nearest = np.where(((low <= 0.0) & (high >= 0.0)) | (high >= 180.0), 0.0, nearest)
+    return np.where(flat, nearest, middle)
 
 
 def shared_setting(curves: Sequence[Curve], present: ArrayLike) -> Shared:
@@ -174,14 +214,14 @@ def shared_setting(curves: Sequence[Curve], present: ArrayLike) -> Shared:
     present = np.asarray(present, dtype=np.float64)
     shape = np.broadcast_shapes(
         present.shape,
-        *(np.broadcast_shapes(c.response.suits.shape, c.response.noise.shape, c.held_to.shape) for c in curves),
+        *(array.shape for response, held in curves for array in (response.suits, response.noise, held)),
     )
     low = _search(curves, shape)
     turn = _place_in_arcs(curves, low - BACK_OFF_DB, np.broadcast_to(present, shape))
     excess = least_excess(curves, present + turn)
     window_low, window_high = _window(curves, present, turn)
     # The setting lies in the window exactly when a window exists.
-    has = np.isfinite(turn) & (excess >= 0.0)
+    has = np.isfinite(turn) & (excess >= -2.0 * EXCESS_TOLERANCE_DB)
     return Shared(turn, excess, np.where(has, window_low, np.nan), np.where(has, window_high, np.nan))
 
 

@@ -48,7 +48,7 @@ def visible(step=4.0, lowest=0.0):
 
 
 def simple_formula(dlon, latitude):
-    """tan ψ = sin Δλ / tan φ (Maral & Bousquet, polarisation angle; from memory)."""
+    """With tan ψ = sin Δλ / tan φ (Maral & Bousquet, polarisation angle; from memory)."""
     x, y = np.deg2rad(dlon), np.deg2rad(latitude)
     return fold(np.rad2deg(np.arctan2(np.sin(x), np.tan(y))))
 
