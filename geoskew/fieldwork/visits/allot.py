@@ -69,6 +69,34 @@ def allot_to_crews(
     return crew_of
 
 
+@dataclass
+class _Joining:
+    """Tours of one crew while they are joined; sites are counted from 0 within the crew."""
+
+    from_base: NDArray[np.float64]
+    limits: Limits
+    tours: list[list[int]]
+    length: list[float]
+    tour_of: list[int]
+
+    def join(self, i: int, j: int, saved: float) -> bool:
+        """Join the tours that end in i and in j, where both are ends and the limits allow it."""
+        a, b = self.tour_of[i], self.tour_of[j]
+        if a == b or len(self.tours[a]) + len(self.tours[b]) > self.limits.visits:
+            return False
+        joined = self.length[a] + self.length[b] - saved
+        ends = i in (self.tours[a][0], self.tours[a][-1]) and j in (self.tours[b][0], self.tours[b][-1])
+        if not ends or joined > self.limits.km:
+            return False
+        first = self.tours[a] if self.tours[a][-1] == i else self.tours[a][::-1]
+        second = self.tours[b] if self.tours[b][0] == j else self.tours[b][::-1]
+        self.tours[a], self.tours[b] = first + second, []
+        self.length[a] = joined
+        for k in second:
+            self.tour_of[k] = a
+        return True
+
+
 def tours_by_savings(
     base: int, sites: NDArray[np.intp], distances: Distances, limits: Limits
 ) -> list[list[int]]:
@@ -80,24 +108,35 @@ def tours_by_savings(
     if len(sites) == 0:
         return []
     from_base = distances.km(base, sites)
-    tour_of = list(range(len(sites)))
-    tours: list[list[int]] = [[k] for k in range(len(sites))]
-    length = (2.0 * from_base).tolist()
+    count = range(len(sites))
+    joining = _Joining(from_base, limits, [[k] for k in count], (2.0 * from_base).tolist(), list(count))
     for i, j, saved in _savings(sites, from_base, distances):
-        a, b = tour_of[i], tour_of[j]
-        if a == b or len(tours[a]) + len(tours[b]) > limits.visits:
+        joining.join(i, j, saved)
+    _join_short_tours(joining, sites, distances)
+    return [[int(sites[k]) for k in tour] for tour in joining.tours if tour]
+
+
+def _join_short_tours(joining: _Joining, sites: NDArray[np.intp], distances: Distances) -> None:
+    """Join what is left of half-empty days, near or far: a day that is not needed serves others."""
+    short = [k for k, tour in enumerate(joining.tours) if tour and 2 * len(tour) <= joining.limits.visits]
+    for which in sorted(short, key=lambda k: (len(joining.tours[k]), k)):
+        tour = joining.tours[which]
+        if not tour:
             continue
-        joined = length[a] + length[b] - saved
-        ends = i in (tours[a][0], tours[a][-1]) and j in (tours[b][0], tours[b][-1])
-        if not ends or joined > limits.km:
-            continue
-        first = tours[a] if tours[a][-1] == i else tours[a][::-1]
-        second = tours[b] if tours[b][0] == j else tours[b][::-1]
-        tours[a], tours[b] = first + second, []
-        length[a] = joined
-        for k in tours[a]:
-            tour_of[k] = a
-    return [[int(sites[k]) for k in tour] for tour in tours if tour]
+        others = [k for k, other in enumerate(joining.tours) if other and k != which]
+        ends = np.array([(joining.tours[k][0], joining.tours[k][-1]) for k in others], dtype=np.intp).ravel()
+        choices = [
+            (float(saved), i, int(j))
+            for i in {tour[0], tour[-1]}
+            for saved, j in zip(
+                joining.from_base[i] + joining.from_base[ends] - distances.km(sites[i], sites[ends]),
+                ends,
+                strict=True,
+            )
+        ]
+        for saved, i, j in sorted(choices, key=lambda choice: (-choice[0], choice[1:])):
+            if joining.join(i, j, saved):
+                break
 
 
 def _savings(

@@ -66,7 +66,8 @@ def read_distances(path: Path, names: Mapping[str, int]) -> dict[tuple[int, int]
     ----------
     path : Path
         UTF-8, comma; ``from`` and ``to`` are site ids, or ``base:NAME`` for a crew's base. A pair that
-        is given one way only counts both ways; pairs of unknown names are passed over.
+        is given one way only counts both ways, of two that differ the longer counts; pairs of unknown
+        names are passed over.
     names : mapping
         Number of each place by its name.
 
@@ -118,4 +119,9 @@ def _roads(
             one_way[origin, target] = km
     if problems:
         raise InputError(problems)
-    return {(j, i): km for (i, j), km in one_way.items()} | one_way
+    # Tours may be driven either way round: of two directions that differ the longer one counts.
+    return {
+        pair: max(km, one_way.get((pair[1], pair[0]), 0.0))
+        for (i, j), km in one_way.items()
+        for pair in ((i, j), (j, i))
+    }

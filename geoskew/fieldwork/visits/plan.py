@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from datetime import date, datetime
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,6 +18,9 @@ from geoskew.fieldwork.visits.sheets import AHEAD, AT_CHANGEOVER, Plan, Rows, pl
 
 if TYPE_CHECKING:
     import pandas
+
+# How often tours are shortened and filled up again, as long as that serves further sites.
+_ROUNDS: Final = 3
 
 
 def plan_visits(
@@ -129,8 +132,12 @@ def _shorten_all(
 
     skipped = 0
     for draft in drafts:
-        skipped += shorten(draft, seconds_per_crew=seconds, on_slice=step)
-        fill(draft)  # shorter tours leave kilometres for sites that did not fit before
+        for _ in range(_ROUNDS):
+            waiting = len(draft.left)
+            skipped += shorten(draft, seconds_per_crew=seconds, on_slice=step)
+            fill(draft)  # shorter tours leave kilometres for sites that did not fit before
+            if len(draft.left) == waiting:
+                break
     if on_progress is not None:
         on_progress(total, total)
     return skipped
