@@ -61,7 +61,7 @@ class Path(NamedTuple):
 
 
 class Link(NamedTuple):
-    """Every term of one carrier's link with a perfectly set feed, for the response and for `spot --budget`."""
+    """Every term of one carrier's link with a perfectly set feed."""
 
     path: Path
     sky: Sky
@@ -102,21 +102,31 @@ def link(carrier: Any, path: Path, sky: Sky, *, dish: Any) -> Link:
     return Link(path, sky, noise, merit, c_n)
 
 
-def leak(
-    carrier: Any, *, satellite_db: Array, dish: Any, off_axis: Array, rain_db: Array, phasors: bool
-) -> Array:
-    """What a perfect setting leaves of the crossed polarisation: satellite, dish and feed off the axis, rain."""
+def antenna_leak(carrier: Any, *, satellite_db: Array, dish: Any, off_axis: Array, phasors: bool) -> Array:
+    """What the antennas leak at a perfect setting: satellite, and dish and feed off the axis."""
     terminal = receiver.isolation_off_axis(
         off_axis,
         isolation_db=dish("isolation_db"),
         diameter_m=dish("dish_m"),
         frequency_ghz=carrier.frequency_ghz,
     )
-    return (amplitude_sum if phasors else power_sum)(satellite_db, terminal, rain_db)
+    return (amplitude_sum if phasors else power_sum)(satellite_db, terminal)
+
+
+def with_rain(leak: Array, rain_db: Array, *, phasors: bool) -> Array:
+    """The leak of the antennas and that of rain together."""
+    return np.asarray(leak + (amplitude_sum if phasors else power_sum)(rain_db))
 
 
 def response(
-    carrier: Any, terms: Link, *, suits: Array, leak: Array, phasors: bool, fixed: float | None, neighbours: Neighbours
+    carrier: Any,
+    terms: Link,
+    *,
+    suits: Array,
+    leak: Array,
+    phasors: bool,
+    fixed: float | None,
+    neighbours: Neighbours,
 ) -> Response:
     """The margin of a carrier as a function of the setting.
 

@@ -14,13 +14,13 @@ from geoskew.situation.ports import is_linear, old_port
 from geoskew.situation.views import View
 
 if TYPE_CHECKING:
-    from geoskew.situation.core import Situation
+    from geoskew.situation.links import Links
 
 # The hand opposite to a circular one.
 _HANDS = {"L", "R"}
 
 
-def interference(situation: Situation, stand: Stand, number: int) -> Neighbours:
+def interference(situation: Links, stand: Stand, number: int) -> Neighbours:
     """Power of all neighbours of that moment over the wanted carrier's, as a function of the setting."""
     zero = np.zeros(())
     total = Neighbours(zero, zero, zero)
@@ -29,14 +29,16 @@ def interference(situation: Situation, stand: Stand, number: int) -> Neighbours:
     return total
 
 
-def each_neighbour(situation: Situation, stand: Stand, number: int) -> list[tuple[Any, Neighbours]]:
+def each_neighbour(situation: Links, stand: Stand, number: int) -> list[tuple[Any, Neighbours]]:
     """The neighbours of that moment in the scenario's order, and the power of each as `interference` adds it.
 
     Each comes along its own line of sight, by the receive pattern's gain at its angle from the
     dish's axis, with its own E-vector carried to that axis. Its path fades as the wanted one's does.
     Where phases are not known, or no turn changes anything, each counts as at its worst setting.
     """
-    in_full = situation.scenario.decision.addition == "phasor" or situation.fixed[stand.moment][number] is not None
+    in_full = (
+        situation.scenario.decision.addition == "phasor" or situation.fixed[stand.moment][number] is not None
+    )
     found = []
     for neighbour in situation.scenario.neighbours:
         if neighbour.when in ("both", stand.moment):
@@ -47,7 +49,7 @@ def each_neighbour(situation: Situation, stand: Stand, number: int) -> list[tupl
     return found
 
 
-def _one(situation: Situation, stand: Stand, number: int, neighbour: object) -> Neighbours:
+def _one(situation: Links, stand: Stand, number: int, neighbour: object) -> Neighbours:
     carrier = situation.carriers(stand.moment)[number]
     wanted = situation.path(stand, number)
     dish = situation.before if stand.moment == "before" or stand.stays else situation.after
@@ -67,7 +69,8 @@ def _one(situation: Situation, stand: Stand, number: int, neighbour: object) -> 
     free_space = receiver.free_space_loss(view.sight.range_m / 1000.0, frequency_ghz=carrier.frequency_ghz)
     # Below the horizon a neighbour is shadowed by the Earth.
     over = ratio(
-        (view.satellite.eirp_dbw - free_space + gain) - (wanted.eirp - wanted.free_space + wanted.gain - wanted.pointing)
+        (view.satellite.eirp_dbw - free_space + gain)
+        - (wanted.eirp - wanted.free_space + wanted.gain - wanted.pointing)
     )
     over = np.where(view.elevation > 0.0, over, 0.0)
     leak = ratio(-np.asarray(view.satellite.isolation_db)) + ratio(cross - gain)
@@ -76,7 +79,7 @@ def _one(situation: Situation, stand: Stand, number: int, neighbour: object) -> 
 
 
 def _by_setting(
-    situation: Situation, stand: Stand, number: int, view: View, dish: View, over: Array, leak: Array
+    situation: Links, stand: Stand, number: int, view: View, dish: View, over: Array, leak: Array
 ) -> Neighbours:
     carrier = situation.carriers(stand.moment)[number]
     theirs = view.satellite.polarisation

@@ -31,7 +31,8 @@ def outage_hours(situation: Situation, stand: Stand, setting: Array) -> Array:
     for number in range(count):
         skies = situation.sky.ladder(stand.moment, number, weather.PERCENTAGES)
         margins = [
-            situation.response(stand, number, situation.link_under(stand, number, sky)).margin(setting) for sky in skies
+            situation.response(stand, number, situation.link_under(stand, number, sky)).margin(setting)
+            for sky in skies
         ]
         least = margins if least is None else [np.minimum(a, b) for a, b in zip(least, margins, strict=True)]
     ladder = np.stack(np.broadcast_arrays(*(least or [clear])))

@@ -16,7 +16,7 @@ def is_linear(carrier: Any) -> bool:
 
 
 def old_port(before: Sequence[Any]) -> str | None:
-    """The port in use before the changeover, "V" or "H"; None where carriers differ, so that it is switched."""
+    """The port in use before, "V" or "H"; None where carriers differ, so that it is switched."""
     linear = {carrier.polarisation for carrier in before if is_linear(carrier)}
     return linear.pop() if len(linear) == 1 else None
 
@@ -24,8 +24,9 @@ def old_port(before: Sequence[Any]) -> str | None:
 def port_offset(before: Sequence[Any], after: Sequence[Any], ports: Any) -> list[Array]:
     """Degrees to add, a new carrier, to the angle that suits it.
 
-    The same array for carriers of the same offset. With one port, the old carriers' port takes the new ones too: a carrier of the other linear
-    polarisation suits at 90° more. With two ports, or a switched one, it is simply taken at the other.
+    The same array for carriers of the same offset. With one port, the old carriers' port takes the new
+    ones too: a carrier of the other linear polarisation suits at 90° more. With two ports, or a
+    switched one, it is simply taken at the other.
     """
     port = old_port(before)
     quarter, none = np.where(np.asarray(ports) == 1, 90.0, 0.0), np.zeros(())

@@ -13,7 +13,7 @@ from geoskew.geometry import Array
 from geoskew.situation.carriers import Moment, Sky
 
 if TYPE_CHECKING:
-    from geoskew.situation.core import Situation
+    from geoskew.situation.links import Links
 
 # Below this the recommendations' slant paths do not hold; a lower satellite is taken to stand there.
 LOWEST_PATH_DEG: Final = 5.0
@@ -30,7 +30,7 @@ class SkyModel:
     topography of P.1511 here, and only here.
     """
 
-    def __init__(self, situation: Situation) -> None:
+    def __init__(self, situation: Links) -> None:
         self._situation = situation
         self._paths: dict[tuple[Moment, int, bool], Sky] = {}
 
@@ -41,7 +41,11 @@ class SkyModel:
         frequencies = sorted({carrier.frequency_ghz for carrier in both})
         places = situation.places
         found = weather.climates(
-            places.longitude, places.latitude, places.height, frequencies_ghz=frequencies, percentage=self.percentage
+            places.longitude,
+            places.latitude,
+            places.height,
+            frequencies_ghz=frequencies,
+            percentage=self.percentage,
         )
         return dict(zip(frequencies, found, strict=True))
 
@@ -53,10 +57,12 @@ class SkyModel:
         return weather.HELD_PERCENTAGE if stated is None else round(100.0 - stated.availability_percent, 9)
 
     def path(self, moment: Moment, number: int, *, rain: bool) -> Sky:
-        """Attenuation towards the satellite of a moment for one carrier: clear sky, or as availability states."""
+        """Attenuation of one carrier's path: in clear sky, or as the availability states."""
         key = (moment, number, rain)
         if key not in self._paths:
-            self._paths[key] = self.ladder(moment, number, [self.percentage])[0] if rain else self._clear(moment, number)
+            self._paths[key] = (
+                self.ladder(moment, number, [self.percentage])[0] if rain else self._clear(moment, number)
+            )
         return self._paths[key]
 
     def _elevation(self, moment: Moment) -> Array:
@@ -67,7 +73,7 @@ class SkyModel:
         return Sky(total=gas, radiating=gas, rain=np.zeros(()), depolarisation=np.asarray(np.inf))
 
     def tilt(self, moment: Moment, number: int) -> Array:
-        """Tilt τ of the wanted E-vector from the local horizontal, degrees, modulo 180: 90 − skew for V, −skew for H."""
+        """Tilt τ of the E-vector from the local horizontal, degrees: 90 − skew for V, −skew for H."""
         polarisation = self._situation.carriers(moment)[number].polarisation
         if polarisation not in ("V", "H"):
             return np.asarray(CIRCULAR_TILT_DEG)
@@ -106,7 +112,9 @@ class SkyModel:
         ]
 
     @staticmethod
-    def _depolarisation(one: weather.Attenuation, elevation: Array, tilt: Array, frequency_ghz: float) -> Array:
+    def _depolarisation(
+        one: weather.Attenuation, elevation: Array, tilt: Array, frequency_ghz: float
+    ) -> Array:
         if frequency_ghz < LOWEST_DEPOLARISATION_GHZ:
             return np.asarray(np.inf)
         return weather.discrimination(

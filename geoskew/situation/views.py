@@ -104,7 +104,7 @@ class View:
 
     @cached_property
     def strongest_beam(self) -> tuple[Array, NDArray[np.intp]]:
-        """EIRP of the strongest beam at each place without the offset, dBW, and its number from 0; NaN and −1: none."""
+        """EIRP of the strongest beam without the offset, dBW, and its number; NaN and −1: none."""
         from geoskew.coverage import strongest
 
         return strongest(self._beam_levels)
