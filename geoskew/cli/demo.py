@@ -16,7 +16,7 @@ from geoskew.cli import options
     type=click.Path(path_type=Path),
     default=None,
     metavar="DIR",
-    help="Folder for the results. [maps/demo in a checkout, else geoskew-demo]",
+    help="Folder for the results. [maps/NAME in a checkout, else geoskew-NAME]",
 )
 @click.option(
     "--scenario",
@@ -44,8 +44,7 @@ def command(
 
 
 def _default_folder(name: str) -> Path:
-    """`maps/` where it stands in the current folder with a checkout around it, else a folder of its own."""
-    suffix = "demo" if name == "southern-cone" else f"demo-{name}"
+    """`maps/NAME` where the current folder is a checkout, else a folder of its own."""
     if Path("maps/README.md").is_file() and Path("pyproject.toml").is_file():
-        return Path("maps") / suffix
-    return Path(f"geoskew-{suffix}")
+        return Path("maps") / name
+    return Path(f"geoskew-{name}")
