@@ -27,14 +27,18 @@ def command(
     from geoskew.study.plan import can_plan, plan_of
 
     if out.suffix.lower() not in (".html", ".pdf"):
-        raise InputError(f"{out}: job cards are written as .html or .pdf; give a name with one of these endings")
+        raise InputError(
+            f"{out}: job cards are written as .html or .pdf; give a name with one of these endings"
+        )
     study = Study(scenario, strict=strict)
     facts = card_facts(study)
     require_free([out], overwrite=overwrite)
     with console.progress(quiet=quiet) as report:
         order = None
         if can_plan(study):
-            order = plan_of(study, on_progress=lambda done, total: report("plan of visits", done, total)).plan.visits
+            order = plan_of(
+                study, on_progress=lambda done, total: report("plan of visits", done, total)
+            ).plan.visits
         as_html = out.suffix.lower() == ".html"
         remarks = write_cards(
             out if as_html else None, None if as_html else out, study.assessed.table, facts, order=order

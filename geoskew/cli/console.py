@@ -33,7 +33,12 @@ def _bars() -> Iterator[Report]:
     from rich.progress import BarColumn, Progress, TextColumn, TimeRemainingColumn
 
     console = Console(stderr=True)
-    columns = (TextColumn("{task.description}"), BarColumn(), TextColumn("{task.percentage:>3.0f} %"), TimeRemainingColumn())
+    columns = (
+        TextColumn("{task.description}"),
+        BarColumn(),
+        TextColumn("{task.percentage:>3.0f} %"),
+        TimeRemainingColumn(),
+    )
     with Progress(*columns, console=console, transient=True) as bars:
         tasks: dict[str, object] = {}
 
@@ -72,4 +77,6 @@ def tell_rejected(study: object, folder: Path, *, quiet: bool = False) -> None:
     rejected = study.sites.rejected  # type: ignore[attr-defined]
     if rejected:
         rows = "row" if len(rejected) == 1 else "rows"
-        say(f"{len(rejected)} {rows} of {scenario.sites.file.name} could not be used; see {folder / 'rejected.csv'}")
+        say(
+            f"{len(rejected)} {rows} of {scenario.sites.file.name} could not be used; see {folder / 'rejected.csv'}"
+        )

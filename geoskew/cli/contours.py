@@ -9,7 +9,9 @@ import click
 from geoskew.cli import console, options
 
 
-@click.command("contours", epilog="Example: geoskew contours plan.toml --out skew.gpkg --layer skew_after --every 2")
+@click.command(
+    "contours", epilog="Example: geoskew contours plan.toml --out skew.gpkg --layer skew_after --every 2"
+)
 @options.scenario
 @options.out_file(".gpkg")
 @options.layer

@@ -14,7 +14,9 @@ class Wanted(click.ParamType):
 
     name = "COLUMN=VALUE"
 
-    def convert(self, value: object, param: click.Parameter | None, ctx: click.Context | None) -> tuple[str, str]:
+    def convert(
+        self, value: object, param: click.Parameter | None, ctx: click.Context | None
+    ) -> tuple[str, str]:
         """Column and value."""
         if isinstance(value, tuple):
             return value
@@ -24,12 +26,18 @@ class Wanted(click.ParamType):
         return column, text
 
 
-@click.command("fieldmap", epilog="Example: geoskew fieldmap plan.toml --out map.html --only crew=North --blur 5")
+@click.command(
+    "fieldmap", epilog="Example: geoskew fieldmap plan.toml --out map.html --only crew=North --blur 5"
+)
 @options.scenario
 @options.out_file(".html")
 @options.layer
-@click.option("--only", type=Wanted(), multiple=True, help="Keep only some sites, as crew=North or district=Jujuy.")
-@click.option("--blur", type=float, default=None, metavar="KM", help="Coarsen the sites' places to about so many km.")
+@click.option(
+    "--only", type=Wanted(), multiple=True, help="Keep only some sites, as crew=North or district=Jujuy."
+)
+@click.option(
+    "--blur", type=float, default=None, metavar="KM", help="Coarsen the sites' places to about so many km."
+)
 @options.tiles
 @options.overwrite
 @options.strict
@@ -59,7 +67,9 @@ def command(
     study = Study(scenario, strict=strict)
     require_free([out], overwrite=overwrite)
     with console.progress(quiet=quiet) as report:
-        content = content_of(study, layers, beside=out.parent, tiles=tiles, only=dict(only), blur_km=blur, report=report)
+        content = content_of(
+            study, layers, beside=out.parent, tiles=tiles, only=dict(only), blur_km=blur, report=report
+        )
         size = write_fieldmap(out, content)
     console.say(f"wrote {out}, {size / 1e6:.1f} MB; {study.judged}", quiet=quiet)
     if remark := size_remark(size):

@@ -10,7 +10,12 @@ import click
 scenario = click.argument("scenario", type=click.Path(path_type=Path))
 
 out_folder = click.option(
-    "--out", "out", type=click.Path(path_type=Path), required=True, metavar="DIR", help="Folder for the results."
+    "--out",
+    "out",
+    type=click.Path(path_type=Path),
+    required=True,
+    metavar="DIR",
+    help="Folder for the results.",
 )
 
 
@@ -38,7 +43,9 @@ precision = click.option(
     show_default=True,
     help="Values rounded to about 0.001, or unrounded 32-bit floats.",
 )
-nodata = click.option("--nodata", type=float, default=None, metavar="VALUE", help="Number for 'no value'. [NaN]")
+nodata = click.option(
+    "--nodata", type=float, default=None, metavar="VALUE", help="Number for 'no value'. [NaN]"
+)
 compress = click.option(
     "--compress",
     type=click.Choice(["DEFLATE", "ZSTD"], case_sensitive=False),
@@ -47,7 +54,11 @@ compress = click.option(
     help="Compression of GeoTIFFs.",
 )
 workers = click.option(
-    "--workers", type=click.IntRange(min=1), default=None, metavar="N", help="Threads to compute with. [cores]"
+    "--workers",
+    type=click.IntRange(min=1),
+    default=None,
+    metavar="N",
+    help="Threads to compute with. [cores]",
 )
 tiles = click.option(
     "--tiles",
@@ -59,6 +70,8 @@ tiles = click.option(
 
 def common(function: Any) -> Any:
     """`-q`, `-v` and `--debug`, which every command takes."""
-    function = click.option("--debug", is_flag=True, help="Show the program's own trace on an error.")(function)
+    function = click.option("--debug", is_flag=True, help="Show the program's own trace on an error.")(
+        function
+    )
     function = click.option("-v", "--verbose", is_flag=True, help="Say more about what is done.")(function)
     return click.option("-q", "--quiet", is_flag=True, help="Say nothing but errors.")(function)

@@ -10,7 +10,9 @@ import click
 from geoskew.cli import console, options
 
 
-@click.command("raster", epilog="Example: geoskew raster plan.toml --out layers --layer skew_after --layer action")
+@click.command(
+    "raster", epilog="Example: geoskew raster plan.toml --out layers --layer skew_after --layer action"
+)
 @options.scenario
 @options.out_folder
 @options.layer

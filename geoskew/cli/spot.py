@@ -15,7 +15,9 @@ class Place(click.ParamType):
 
     name = "LAT,LON"
 
-    def convert(self, value: object, param: click.Parameter | None, ctx: click.Context | None) -> tuple[float, float]:
+    def convert(
+        self, value: object, param: click.Parameter | None, ctx: click.Context | None
+    ) -> tuple[float, float]:
         """Latitude and longitude, checked."""
         if isinstance(value, tuple):
             return value
@@ -57,4 +59,8 @@ def command(
         click.echo(json.dumps(data, indent=1, ensure_ascii=False, allow_nan=False) if as_json else text)
         return
     values = spot_values(scenario, latitude, longitude, height)
-    click.echo(json.dumps(values, indent=1, ensure_ascii=False, allow_nan=False) if as_json else values_as_text(values))
+    click.echo(
+        json.dumps(values, indent=1, ensure_ascii=False, allow_nan=False)
+        if as_json
+        else values_as_text(values)
+    )

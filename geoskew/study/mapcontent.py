@@ -71,7 +71,9 @@ def map_content(
     columns: tuple[Any, ...] = ()
     if scenario.sites is not None:
         table, columns = study.assessed.table, study.assessed.columns
-    lines = [line for name in contour_names(study) if name in rasters for line in _isolines(name, rasters[name])]
+    lines = [
+        line for name in contour_names(study) if name in rasters for line in _isolines(name, rasters[name])
+    ]
     return MapContent(
         title=scenario.title,
         geometry=_geometry(study),
@@ -188,7 +190,9 @@ def _routes(planned: Planned) -> list[Route]:
         if stops.empty:
             continue
         base = [[day.base_lon, day.base_lat]]
-        track = np.asarray(base + stops[["lon", "lat"]].to_numpy(dtype=float).tolist() + base, dtype=np.float64)
+        track = np.asarray(
+            base + stops[["lon", "lat"]].to_numpy(dtype=float).tolist() + base, dtype=np.float64
+        )
         track[:, 0] = np.unwrap(track[:, 0], period=360.0)
         routes.append(Route(str(day.crew), str(day.day), track, tuple(stops["id"].astype(str))))
     return routes
@@ -232,5 +236,8 @@ def _basemap(bounds: tuple[float, float, float, float]) -> Basemap:
     def rings(geometry: Any) -> list[Any]:
         return [shapely.get_coordinates(part) for part in shapely.get_parts(geometry)]
 
-    land = [shapely.get_coordinates(shapely.get_exterior_ring(part)) for part in shapely.get_parts(outline("land", bounds))]
+    land = [
+        shapely.get_coordinates(shapely.get_exterior_ring(part))
+        for part in shapely.get_parts(outline("land", bounds))
+    ]
     return Basemap(land=land, borders=rings(outline("borders", bounds)), attribution=BASEMAP_THANKS)

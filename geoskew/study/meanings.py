@@ -36,6 +36,9 @@ GIVEN: Final[dict[str, tuple[str, str]]] = {
     "district": ("", "district of the site"),
     "access": ("", "what to know of the way there"),
     "last_visit": ("", "date of the last visit"),
-    "weakest_before": ("", "carrier with the least margin before the changeover, feed and dish perfectly set"),
+    "weakest_before": (
+        "",
+        "carrier with the least margin before the changeover, feed and dish perfectly set",
+    ),
     "weakest_after": ("", "carrier with the least margin after the changeover, feed and dish perfectly set"),
 }

@@ -72,7 +72,9 @@ def write_study_rasters(
         nodata=nodata,
         precision=precision,
         compress=compress,
-        on_progress=None if report is None else lambda phase, done, total: report(phases.get(phase, phase), done, total),
+        on_progress=None
+        if report is None
+        else lambda phase, done, total: report(phases.get(phase, phase), done, total),
     )
 
 
@@ -84,7 +86,12 @@ def contoured(names: Sequence[str] | None, study: Study) -> tuple[str, ...]:
 
 
 def write_study_contours(
-    study: Study, path: Path, names: Sequence[str] | None, *, every: float | None = None, report: Report | None = None
+    study: Study,
+    path: Path,
+    names: Sequence[str] | None,
+    *,
+    every: float | None = None,
+    report: Report | None = None,
 ) -> list[str]:
     """Contours of layers computed for the purpose; nothing but the lines stays. Returns remarks."""
     if path.suffix.lower() != ".gpkg":

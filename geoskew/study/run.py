@@ -97,7 +97,9 @@ def run(study: Study, folder: Path, settings: Settings, report: Report) -> Writt
     return written
 
 
-def _rasters(study: Study, folder: Path, settings: Settings, written: Written, report: Report) -> dict[str, Path]:
+def _rasters(
+    study: Study, folder: Path, settings: Settings, written: Written, report: Report
+) -> dict[str, Path]:
     if study.scenario.region is None:
         return {}
     names = study.raster_names
@@ -209,7 +211,9 @@ def _site_summary(study: Study) -> dict[str, Any]:
         "by_action": summary.counts_by_class(table["action"], ACTIONS),
         "worst_untouched": summary.worst_sites(table, f"margin_untouched{suffix}", count=WORST_SITES),
         "worst_realigned": summary.worst_sites(table, f"margin_realigned{suffix}", count=WORST_SITES),
-        "least_margin_shared_db": float(np.nanmin(np.stack(shared))) if np.isfinite(np.stack(shared)).any() else None,
+        "least_margin_shared_db": float(np.nanmin(np.stack(shared)))
+        if np.isfinite(np.stack(shared)).any()
+        else None,
     }
 
 
@@ -228,6 +232,8 @@ def summary_line(folder: Path) -> str:
         parts.append(f"{sites['assessed']} sites assessed ({counts}), {sites['rejected']} rows rejected")
     if "visits" in content:
         plan = content["visits"]
-        parts.append(f"{plan['planned']} visits on {plan['crew_days']} crew days, {plan['not_reached']} not reached")
+        parts.append(
+            f"{plan['planned']} visits on {plan['crew_days']} crew days, {plan['not_reached']} not reached"
+        )
     parts.append(content["judged"])
     return "; ".join(parts)

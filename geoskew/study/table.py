@@ -64,11 +64,15 @@ def chunks(places: Places, size: int) -> Iterator[Places]:
             places.longitude[part],
             places.latitude[part],
             np.broadcast_to(places.height, (count,))[part],
-            columns={name: np.broadcast_to(column, (count,))[part] for name, column in places.columns.items()},
+            columns={
+                name: np.broadcast_to(column, (count,))[part] for name, column in places.columns.items()
+            },
         )
 
 
-def _values(scenario: Scenario, places: Places, names: tuple[str, ...], inputs: Inputs) -> dict[str, NDArray[Any]]:
+def _values(
+    scenario: Scenario, places: Places, names: tuple[str, ...], inputs: Inputs
+) -> dict[str, NDArray[Any]]:
     values: dict[str, NDArray[Any]] = {}
     for name, array in evaluate(scenario, places, names, inputs=inputs).items():
         record = REGISTRY[name]
