@@ -414,3 +414,10 @@ def test_missing_or_foreign_file_of_roads(tmp_path: Path) -> None:
     file.write_bytes("from,to,km\nñ,b,1\n".encode("latin-1"))
     with pytest.raises(InputError, match="is not UTF-8"):
         read_distances(file, {})
+
+
+def test_weights_as_given_may_have_a_decimal_comma() -> None:
+    table = pd.DataFrame({"id": list("abc"), "lat": -33.5, "lon": -64.0, "action": "preset"})
+    table["weight"] = ["1", "2,5", ""]
+    crew = Crew("one", Base(-64.0, -33.5), visits_per_day=1)
+    assert plan(table, [crew], first_day=date(2027, 5, 17)).visits["id"].tolist() == ["b"]

@@ -92,7 +92,11 @@ def _column(table: pandas.DataFrame, name: str, otherwise: float) -> NDArray[np.
 
     if name not in table:
         return np.full(len(table), otherwise)
-    return np.asarray(pandas.to_numeric(table[name], errors="coerce"), dtype=np.float64)
+    cells = table[name]
+    if cells.dtype.kind not in "if":  # a cell as it was given may have a decimal comma
+        cells = cells.astype("string").str.replace(",", ".")
+    numbers = pandas.to_numeric(cells, errors="coerce")
+    return np.asarray(numbers.to_numpy(dtype=np.float64, na_value=np.nan), dtype=np.float64)
 
 
 def plan_of(

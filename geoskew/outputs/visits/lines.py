@@ -96,7 +96,10 @@ def _column(table: pandas.DataFrame, name: str) -> Any:
     if name in ("order", "visits"):
         return pyarrow.array(table[name].tolist(), pyarrow.int64())
     if name in _NUMBERS:
-        numbers = pandas.to_numeric(table[name], errors="coerce").to_numpy(dtype=float)
+        cells = table[name]
+        if cells.dtype.kind not in "if":  # a cell as it was given may have a decimal comma
+            cells = cells.astype("string").str.replace(",", ".")
+        numbers = pandas.to_numeric(cells, errors="coerce").to_numpy(dtype=float, na_value=float("nan"))
         return pyarrow.array(numbers, from_pandas=True)
     words = [None if pandas.isna(value) else str(value) for value in table[name]]
     return pyarrow.array(words, pyarrow.string())
