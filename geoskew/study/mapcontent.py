@@ -35,7 +35,7 @@ if TYPE_CHECKING:
 # Cells along the longer side of an overlay: what a phone shows and carries.
 LONG_SIDE: Final = 1200
 # Room around the region or the sites, as a share of their extent and in degrees at the least.
-ROOM_SHARE, ROOM_DEG = 0.1, 1.0
+ROOM_SHARE, ROOM_DEG = 0.5, 2.0
 BASEMAP_THANKS: Final = "Made with Natural Earth, public domain"
 
 
