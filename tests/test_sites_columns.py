@@ -6,6 +6,8 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+import shapely
+from region_files import written
 from site_files import read_text, reasons
 
 from geoskew.errors import InputError
@@ -46,7 +48,7 @@ def test_columns_with_a_meaning_are_checked(tmp_path: Path, name: str, cell: str
 
 def test_every_key_of_the_terminal_is_a_column() -> None:
     numbers = {key for key, field in Terminal.model_fields.items() if field.annotation in (int, float)}
-    assert numbers | {"setting_deg", "antenna_height_m"} == set(PLACE_COLUMNS)
+    assert numbers | {"setting_deg", "antenna_height_m", "scale_zero_deg"} == set(PLACE_COLUMNS)
     assert set(Terminal.model_fields) <= set(RESERVED)
 
 
@@ -133,3 +135,49 @@ def test_latitude_and_longitude_exchanged_throughout(tmp_path: Path) -> None:
     assert right.warnings == []
     far = read_text(tmp_path, "id,lat,lon\nA,50,10\n", region=region)
     assert (len(far), far.warnings) == (1, [])  # sites outside of the region are assessed too
+
+
+REGION = {"bounds_deg": [-76.0, -56.0, -53.0, -17.0], "step_deg": 1.0}
+
+
+def test_a_single_row_with_latitude_and_longitude_exchanged_is_rejected(tmp_path: Path) -> None:
+    rows = "A,-33,-70\nB,-34,-71\nturned,-71.4,-35.7\nbeside,-16.5,-60\nfar,40,10\nA,-70,-33\n"
+    sites = read_text(tmp_path, "id,lat,lon\n" + rows, region=REGION)
+    assert sites.ids == ("A", "B", "beside", "far")
+    assert reasons(sites)[4] == (
+        "latitude and longitude look exchanged: lat -71.4, lon -35.7 lies outside of the region, "
+        "but inside it the other way round; exchange them"
+    )
+    # A row that is rejected for this holds no id, so that it is not called a repeated one as well.
+    assert reasons(sites)[7].startswith("latitude and longitude look exchanged")
+    assert "already" not in reasons(sites)[7]
+    assert sites.warnings == []
+
+
+def test_nothing_is_taken_for_exchanged_without_a_region_or_in_a_list_of_elsewhere(tmp_path: Path) -> None:
+    text = "id,lat,lon\nA,-33,-70\nB,-34,-71\nturned,-71.4,-35.7\n"
+    assert read_text(tmp_path, text).rejected == []
+    # Most of this list lies elsewhere: its one row at sea is as good as the others.
+    elsewhere = "id,lat,lon\nA,40,10\nB,41,11\nC,42,12\nturned,-71.4,-35.7\n"
+    assert read_text(tmp_path, elsewhere, region=REGION).rejected == []
+
+
+def test_a_place_within_a_degree_of_the_region_is_not_taken_for_exchanged(tmp_path: Path) -> None:
+    # Both stand in the region when exchanged; the first lies 0.5° north of it, the second 2°.
+    region = {"bounds_deg": [30.0, 30.0, 43.0, 40.0], "step_deg": 1.0}
+    text = "id,lat,lon\nA,35,35\nB,36,36\nC,36.5,37\nnear,40.5,35\nfar,42,35\n"
+    assert list(reasons(read_text(tmp_path, text, region=region))) == [6]
+
+
+def test_exchanged_rows_across_the_antimeridian_and_in_an_outline(tmp_path: Path) -> None:
+    region = {"bounds_deg": [166.0, -24.0, -168.0, -8.0], "step_deg": 1.0}
+    # Longitudes of that region are no latitudes: such rows are out of range, not exchanged.
+    sites = read_text(tmp_path, "id,lat,lon\nA,-17,178\nB,-14,-171\nC,178,-17\n", region=region)
+    assert sites.ids == ("A", "B")
+    assert "out of range" in reasons(sites)[4]
+    written(tmp_path / "outline.gpkg", shapely.Point(-65, -33).buffer(5))
+    outline = {"outline": "outline.gpkg", "step_deg": 0.5}
+    text = "id,lat,lon\nA,-33,-66\nB,-34,-65\nturned,-66,-34\ncorner,-69,-29\n"
+    sites = read_text(tmp_path, text, region=outline)
+    # The corner of the outline's bounds lies outside of the outline, exchanged or not.
+    assert (sites.ids, list(reasons(sites))) == (("A", "B", "corner"), [4])

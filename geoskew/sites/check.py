@@ -8,7 +8,9 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
+from geoskew.region import Grid
 from geoskew.sites.cells import Column, as_text, decimal_sign, numbers, yes_no
+from geoskew.sites.exchanged import exchanged_rows
 from geoskew.sites.faults import Faults
 from geoskew.sites.headers import Headers
 from geoskew.sites.meanings import CHOICES, NUMBERS, YES_NO, refusal, refusals
@@ -34,7 +36,7 @@ class Checked:
     faults: Faults
 
 
-def check_rows(table: RawTable, found: Headers, *, crs: str | None) -> Checked:
+def check_rows(table: RawTable, found: Headers, *, crs: str | None, grid: Grid | None = None) -> Checked:
     """Turn cells into values and find every fault of every row.
 
     Parameters
@@ -45,6 +47,8 @@ def check_rows(table: RawTable, found: Headers, *, crs: str | None) -> Checked:
         Which column is which.
     crs : str, optional
         CRS of the columns of the position; WGS 84 when absent.
+    grid : Grid, optional
+        The region, by which single rows with exchanged latitude and longitude are told.
 
     Raises
     ------
@@ -73,6 +77,8 @@ def check_rows(table: RawTable, found: Headers, *, crs: str | None) -> Checked:
             _check_choice(faults, name, as_text(table.frame[found.source[name]]))
     _check_stops(faults, values)
     _name_empty_rows(faults, table)
+    if grid is not None and crs is None:
+        _check_exchanged(faults, latitude, longitude, grid)
     _check_repeated(faults, ids, table)
     return Checked(ids, longitude, latitude, values, faults)
 
@@ -167,6 +173,20 @@ def _name_empty_rows(faults: Faults, table: RawTable) -> None:
     for row, reasons in faults.reasons.items():
         if reasons[0] == "id is empty" and not table.row_text(row).strip(',;\t "'):
             faults.reasons[row] = ["the row is empty"]
+
+
+def _check_exchanged(
+    faults: Faults, latitude: NDArray[np.float64], longitude: NDArray[np.float64], grid: Grid
+) -> None:
+    """Reject single rows that lie in the region only with latitude and longitude exchanged."""
+    faults.add(
+        exchanged_rows(longitude, latitude, ~faults.bad, grid),
+        lambda row: (
+            "latitude and longitude look exchanged: "
+            f"lat {latitude[row]:.12g}, lon {longitude[row]:.12g} lies outside of the region, "
+            "but inside it the other way round; exchange them"
+        ),
+    )
 
 
 def _check_repeated(faults: Faults, ids: Series, table: RawTable) -> None:

@@ -6,14 +6,14 @@ from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import numpy as np
-from numpy.typing import NDArray
 
 from geoskew.errors import InputError, Problem
 from geoskew.places import Places
-from geoskew.region import grid_of
+from geoskew.region import Grid, grid_of
 from geoskew.sites import headers
 from geoskew.sites.check import Checked, check_rows
 from geoskew.sites.delimited import read_delimited
+from geoskew.sites.exchanged import exchanged_throughout
 from geoskew.sites.headers import Headers
 from geoskew.sites.listing import Rejected, SiteList
 from geoskew.sites.meanings import PLACE_COLUMNS, REQUIRED, RESERVED
@@ -31,8 +31,14 @@ ENDINGS = (*TEXT_ENDINGS, *VECTOR_ENDINGS, ".xlsx")
 TOLD = 3
 
 
-def read_sites(scenario: Scenario) -> SiteList:
+def read_sites(scenario: Scenario, *, compare: bool = True) -> SiteList:
     """Read the scenario's site list.
+
+    Parameters
+    ----------
+    scenario : Scenario
+    compare : bool
+        Look for latitudes and longitudes that stand in each other's place, by the region.
 
     Returns
     -------
@@ -65,11 +71,13 @@ def read_sites(scenario: Scenario) -> SiteList:
         scenario_path=scenario.path,
         unused=("lat", "lon") if table.positions is not None else (),
     )
-    checked = check_rows(table, found, crs=settings.crs)
+    grid = grid_of(scenario) if compare and scenario.region is not None else None
+    checked = check_rows(table, found, crs=settings.crs, grid=grid)
     sites = _listing(table, found, checked)
     if not sites.ids:
         raise _nothing_left(table, sites.rejected)
-    sites.warnings.extend(_swapped(scenario, sites))
+    if grid is not None:
+        sites.warnings.extend(_swapped(grid, sites))
     return sites
 
 
@@ -128,18 +136,10 @@ def _nothing_left(table: RawTable, rejected: list[Rejected]) -> InputError:
     return InputError(problems)
 
 
-def _swapped(scenario: Scenario, sites: SiteList) -> list[str]:
+def _swapped(grid: Grid, sites: SiteList) -> list[str]:
     """Warn where latitude and longitude seem to be exchanged throughout."""
-    if scenario.region is None:
-        return []
-    grid, places = grid_of(scenario), sites.places
-    outside = ~grid.covers(places.longitude, places.latitude)
-    if np.count_nonzero(outside) * 2 <= len(sites):
-        return []
-    possible = outside & (np.abs(places.longitude) <= 90.0)
-    exchanged: NDArray[np.bool_] = possible & grid.covers(places.latitude, places.longitude)
-    count = int(np.count_nonzero(exchanged))
-    if count * 2 <= len(sites):
+    count = exchanged_throughout(sites.places.longitude, sites.places.latitude, grid)
+    if not count:
         return []
     return [
         f"{count} of {len(sites)} sites lie outside of the region, but inside it with lat and lon exchanged; "
