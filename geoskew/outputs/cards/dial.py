@@ -112,6 +112,8 @@ def hands(dial: Dial) -> Iterator[Mark]:
     tip = (dial.at(dial.target, 100.0), dial.at(dial.target - 4.5, 84.0), dial.at(dial.target + 4.5, 84.0))
     yield Stroke(tip, "target", filled=True)
     x, y = dial.at(dial.target, 130.0)
+    if abs(x) > HALF_SIZE - 28.0:  # at the side the word would leave the picture: it stands above the tip
+        x, y = math.copysign(HALF_SIZE - 28.0, x), y - 15.0
     yield Label(x, y, "TARGET", "target", 11.0)
 
 

@@ -15,7 +15,7 @@ h1,h2,h3,p,ol,ul,dl,dd,figure,table{margin:0}
 h2{font-size:1.25rem;line-height:1.2;max-height:4.8em;overflow:auto}
 h3{font-size:.82rem;text-transform:uppercase;letter-spacing:.04em;color:#333;margin:.7rem 0 .2rem}
 .front{padding:1rem 0}
-.front ol{padding-left:2.6em;max-height:50vh;overflow:auto}
+.front ol{list-style:none;padding:0;max-height:50vh;overflow:auto}
 .front li{padding:.2rem 0}
 .front a{display:inline-block;min-height:44px;line-height:44px;color:#0b4f8a;max-width:100%;
   max-height:132px;overflow:auto}
