@@ -11,6 +11,7 @@ from geoskew.evaluate import NO_CLASS, available, evaluate
 from geoskew.layers import REGISTRY
 from geoskew.places import Places
 from geoskew.scenario import Scenario, load
+from geoskew.study.budget import budget, budget_as_text, words
 
 Value = float | int | str | None
 
@@ -20,7 +21,9 @@ def spot_places(latitude: float, longitude: float, height: float | None) -> Plac
     return Places.of(longitude, latitude, np.nan if height is None else height)
 
 
-def spot_values(scenario_path: Path, latitude: float, longitude: float, height: float | None) -> dict[str, Value]:
+def spot_values(
+    scenario_path: Path, latitude: float, longitude: float, height: float | None
+) -> dict[str, Value]:
     """Every layer's value at one place, None where there is none; `action` by its name."""
     scenario = load(scenario_path)
     values = evaluate(scenario, spot_places(latitude, longitude, height), available(scenario))
@@ -44,17 +47,23 @@ def values_as_text(values: dict[str, Value]) -> str:
     width = max(map(len, values))
     lines = []
     for name, value in values.items():
-        shown = "no value" if value is None else f"{value:.4f}" if isinstance(value, float) else str(value)
-        lines.append(f"{name:<{width}}  {shown:>12} {REGISTRY[name].unit}".rstrip())
+        lines.append(f"{name:<{width}}  {_shown(name, value):>12} {REGISTRY[name].unit}".rstrip())
     return "\n".join(lines)
+
+
+def _shown(name: str, value: Value) -> str:
+    """A value for reading; an outage beyond the range of its method only by the side it lies on."""
+    if value is None:
+        return "no value"
+    if not isinstance(value, float):
+        return str(value)
+    return words.outage(value) if REGISTRY[name].unit == "hours/year" else f"{value:.4f}"
 
 
 def spot_budget(
     scenario_path: Path, latitude: float, longitude: float, height: float | None
 ) -> tuple[str, dict[str, Any]]:
     """The link budget as text and as data."""
-    from geoskew.study.budget import budget, budget_as_text
-
     scenario: Scenario = load(scenario_path)
     data = budget(scenario, spot_places(latitude, longitude, height))
     return budget_as_text(data), data
