@@ -257,6 +257,8 @@ def test_signed_lines_sum_to_the_margin_and_the_least_is_the_layer(name: str, tm
     data = budget(plan, place)
     layers = evaluate(plan, place, [one["layer"] for one in data["budgets"]])
     assert len(data["budgets"]) == (12 if plan.weather else 6)
+    tables = len(data["budgets"][0]["carriers"]) * (4 if plan.weather else 2)
+    assert budget_as_text(data).count("\n= Margin  ") == tables
     for one in data["budgets"]:
         assert one["no_numbers"] is None
         assert one["margin_db"] == pytest.approx(float(layers[one["layer"]].reshape(-1)[0]), abs=1e-9)
