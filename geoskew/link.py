@@ -121,24 +121,42 @@ class Response:
             d = np.full(np.shape(self.suits), np.deg2rad(self.fixed))
             d = np.where(np.isnan(self.suits), np.nan, d)
         else:
-            d = np.deg2rad(fold(np.asarray(setting, dtype=np.float64) - self.suits))
-        theta = 2.0 * (np.abs(d) + self._phase())
-        cosine = np.cos(theta)
-        wanted = middle + swing * cosine
+            d = np.deg2rad(np.asarray(setting, dtype=np.float64) - self.suits)
         if self.phasors:
-            wanted = np.where(theta >= np.pi, 0.0, wanted)
+            theta = 2.0 * (np.abs(np.deg2rad(fold(np.rad2deg(d)))) + self._phase())
+            cosine = np.cos(theta)
+            wanted = np.where(theta >= np.pi, 0.0, middle + swing * cosine)
+        else:
+            cosine = np.cos(2.0 * d)
+            wanted = middle + swing * cosine
         return d, np.maximum(wanted, LEAST_WANTED), middle - swing * cosine
+
+    def _neighbours(self, d: Array) -> Array:
+        """Neighbours' power at an angle d in radians."""
+        if _is_zero(self.neighbour_cosine) and _is_zero(self.neighbour_sine):
+            return np.asarray(self.neighbour_even)
+        turned = self.neighbour_cosine * np.cos(2.0 * d) + self.neighbour_sine * np.sin(2.0 * d)
+        return np.asarray(self.neighbour_even + turned)
 
     def inverse_ratio(self, setting: ArrayLike) -> Array:
         """(N+I)/C at settings in degrees."""
         d, wanted, crossed = self.at(setting)
-        neighbours = self.neighbour_cosine * np.cos(2.0 * d) + self.neighbour_sine * np.sin(2.0 * d)
-        neighbours = neighbours + self.neighbour_even
+        neighbours = self._neighbours(d)
         return np.asarray(self.uplink + (self.noise + self.crossed * crossed + neighbours) / wanted)
 
     def margin(self, setting: ArrayLike) -> Array:
         """Margin in dB at settings in degrees; NaN where `suits` or the carrier has no value."""
         return np.asarray(-10.0 * np.log10(self.inverse_ratio(setting)) - self.required_db)
+
+    def room_for_noise(self, level_db: ArrayLike, setting: ArrayLike) -> Array:
+        """How many times noise and neighbours may grow before the margin falls to `level_db` at a setting.
+
+        They grow as the satellite's EIRP falls; its own crossed carrier and the uplink keep their ratio. Not
+        positive where these alone spoil the level. NaN where the carrier has no value.
+        """
+        d, wanted, crossed = self.at(setting)
+        allowed = ratio(-(np.asarray(level_db, dtype=np.float64) + self.required_db)) - self.uplink
+        return np.asarray((allowed * wanted - self.crossed * crossed) / (self.noise + self._neighbours(d)))
 
     def best_bound(self) -> Array:
         """A margin that no setting exceeds, dB (the true best one where no neighbour is polarised)."""
