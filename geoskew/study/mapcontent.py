@@ -11,7 +11,7 @@ import numpy as np
 from geoskew import __version__
 from geoskew.errors import InputError
 from geoskew.layers import REGISTRY
-from geoskew.outputs import contours
+from geoskew.outputs import contours, fieldmap
 from geoskew.outputs.fieldmap import (
     Basemap,
     ContourLine,
@@ -40,7 +40,7 @@ BASEMAP_THANKS: Final = "Made with Natural Earth, public domain"
 
 
 def overlay_names(study: Study, names: Sequence[str] | None) -> tuple[str, ...]:
-    """Layers to lay over the map: those asked for, or action, the deciding margin untouched, and the shared turn."""
+    """Layers to lay over the map: those asked for, or action, the deciding margin and the shared turn."""
     can = study.raster_names
     if names:
         for name in names:
@@ -88,9 +88,24 @@ def map_content(
         contours=[line for line in lines if not line.layer.startswith("eirp_")],
         coverage=[line for line in lines if line.layer.startswith("eirp_")],
         routes=[] if planned is None else _routes(planned),
-        basemap=_basemap(_bounds(study)),
-        tiles=None if tiles is None else Tiles(tiles, ""),
+        basemap=_basemap(shown_bounds(study)),
+        tiles=background(tiles),
     )
+
+
+def background(tiles: str | None) -> Tiles | None:
+    """The online background that the map may show, from its address.
+
+    Raises
+    ------
+    InputError
+        It is not the address of a tile server.
+    """
+    if tiles is None:
+        return None
+    chosen = Tiles(tiles, "")
+    fieldmap.tile_origin(chosen)
+    return chosen
 
 
 def provenance(study: Study) -> dict[str, str]:
@@ -155,8 +170,10 @@ def _thinned(name: str, path: Path) -> tuple[Any, str, tuple[float, float, float
             values = values.astype(np.float64)
             if source.nodata is not None and not np.isnan(source.nodata):
                 values[values == source.nodata] = np.nan
-        scaled = source.transform * source.transform.scale(source.width / shape[1], source.height / shape[0])
-        return values, source.crs.to_string(), tuple(scaled)[:6]
+        a, b, c, d, e, f = tuple(source.transform)[:6]
+        across, down = source.width / shape[1], source.height / shape[0]
+        scaled = (a * across, b * down, c, d * across, e * down, f)
+        return values, source.crs.to_string(), scaled
 
 
 def _isolines(name: str, path: Path) -> list[ContourLine]:
@@ -198,12 +215,12 @@ def _routes(planned: Planned) -> list[Route]:
     return routes
 
 
-def _bounds(study: Study) -> tuple[float, float, float, float]:
+def shown_bounds(study: Study) -> tuple[float, float, float, float]:
     """Region and sites together with some room; longitudes may run past 180."""
     longitudes: list[float] = []
     latitudes: list[float] = []
     if study.scenario.region is not None:
-        west, south, east, north = _in_degrees(study.grid)
+        west, south, east, north = grid_in_degrees(study.grid)
         longitudes, latitudes = [west, east], [south, north]
     if study.scenario.sites is not None:
         places = study.sites.places
@@ -220,7 +237,8 @@ def _bounds(study: Study) -> tuple[float, float, float, float]:
     return west - turns, max(-90.0, min(latitudes) - above), east - turns, min(90.0, max(latitudes) + above)
 
 
-def _in_degrees(grid: Grid) -> tuple[float, float, float, float]:
+def grid_in_degrees(grid: Grid) -> tuple[float, float, float, float]:
+    """West, south, east, north of a grid in degrees; east may run past 180."""
     if grid.is_geographic:
         return grid.bounds
     from pyproj import Transformer
