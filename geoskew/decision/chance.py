@@ -52,7 +52,7 @@ def fail_probability(
     -----
     The settings that fail are parts of the circle of 180°, found in closed form; the normal
     distribution is integrated over them and wrapped. Where EIRP scatters too, its share is in closed form
-    at each setting, and a quadrature runs over the settings (better than 0.1 percent). No random draws.
+    at each setting, and a quadrature runs over the settings (to 0.2 percent at the worst). No random draws.
     """
     chance = _chance_by_spread(Scattered(responses, eirp_spread_db), intended, level_db)
     return 100.0 * chance(spread_deg)
