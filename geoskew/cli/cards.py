@@ -18,31 +18,31 @@ from geoskew.cli import console, options
 def command(
     scenario: Path, out: Path, overwrite: bool, strict: bool, quiet: bool, verbose: bool, debug: bool
 ) -> None:
-    """Job cards, one page a site: what to do, how far and which way to turn, seen from both standing places."""
+    """Job cards, one page a site: what to do, how far, and which way to turn, from both standing places."""
     from geoskew.errors import InputError
     from geoskew.outputs.cards import write_cards
-    from geoskew.outputs.files import require_free
     from geoskew.study.core import Study
     from geoskew.study.facts import card_facts
+    from geoskew.study.outfiles import require_free_with_rejected, write_rejected
     from geoskew.study.plan import can_plan, plan_of
 
-    if out.suffix.lower() not in (".html", ".pdf"):
-        raise InputError(
-            f"{out}: job cards are written as .html or .pdf; give a name with one of these endings"
-        )
+    as_html = out.suffix.lower() == ".html"
+    if not as_html and out.suffix.lower() != ".pdf":
+        raise InputError(f"{out}: job cards are written as .html or .pdf; give a name with one of the two")
     study = Study(scenario, strict=strict)
     facts = card_facts(study)
-    require_free([out], overwrite=overwrite)
+    require_free_with_rejected(study, out, overwrite=overwrite)
     with console.progress(quiet=quiet) as report:
         order = None
         if can_plan(study):
-            order = plan_of(
-                study, on_progress=lambda done, total: report("plan of visits", done, total)
-            ).plan.visits
-        as_html = out.suffix.lower() == ".html"
-        remarks = write_cards(
-            out if as_html else None, None if as_html else out, study.assessed.table, facts, order=order
-        )
+            plan = plan_of(study, on_progress=lambda done, total: report("plan of visits", done, total)).plan
+            if plan.interrupted:
+                raise KeyboardInterrupt
+            order = plan.visits
+        html, pdf = (out, None) if as_html else (None, out)
+        remarks = write_cards(html, pdf, study.assessed.table, facts, order=order)
+    write_rejected(study, out)
+    console.tell_rejected(study, out.parent)
     for remark in remarks:
         console.say(remark, quiet=quiet)
     console.say(f"wrote {out}; {study.judged}", quiet=quiet)

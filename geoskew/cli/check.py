@@ -13,15 +13,18 @@ from geoskew.cli import console, options
 @options.scenario
 @options.common
 def command(scenario: Path, quiet: bool, verbose: bool, debug: bool) -> int:
-    """Read and validate all inputs, compute nothing; say what 'run' would write."""
+    """Read and validate all inputs, compute nothing; say what 'run' would write.
+
+    Every problem is one line on standard error, rows of the site list that cannot be used included.
+    """
     from geoskew.study.check import check
 
     problems, lines = check(scenario)
     for problem in problems:
         console.say(str(problem))
+    if not quiet:
+        for line in lines:
+            click.echo(line)
     if problems:
-        console.say(f"{len(problems)} problem{'s' if len(problems) > 1 else ''} found")
-        return 2
-    for line in lines:
-        click.echo(line)
-    return 0
+        console.say(f"{len(problems)} problem{'s' if len(problems) > 1 else ''} found", quiet=quiet)
+    return 2 if problems else 0

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+import logging
 import sys
 import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
 from typing import Final
+
+import click
 
 # Without a terminal: one line in this many seconds, so that a log shows that work goes on.
 PLAIN_EVERY_SECONDS: Final = 30.0
@@ -58,7 +61,7 @@ def _plain() -> Report:
         if time.monotonic() - last >= PLAIN_EVERY_SECONDS:
             last = time.monotonic()
             share = 100.0 * done / total if total else 100.0
-            print(f"geoskew: {phase}: {share:.0f} %", file=sys.stderr)
+            say(f"{phase}: {share:.0f} %")
 
     return report
 
@@ -66,17 +69,32 @@ def _plain() -> Report:
 def say(text: str, *, quiet: bool = False) -> None:
     """One line on standard error."""
     if not quiet:
-        print(f"geoskew: {text}", file=sys.stderr)
+        click.echo(f"geoskew: {text}", err=True)
 
 
-def tell_rejected(study: object, folder: Path, *, quiet: bool = False) -> None:
-    """One line on rows that could not be used."""
+class Told(logging.Handler):
+    """Says what the package's modules log."""
+
+    def emit(self, record: logging.LogRecord) -> None:
+        """One line on standard error."""
+        say(record.getMessage())
+
+
+def listen(*, quiet: bool, verbose: bool) -> None:
+    """Say warnings of the package's modules; nothing with `quiet`, more with `verbose`."""
+    logger = logging.getLogger("geoskew")
+    if not any(isinstance(handler, Told) for handler in logger.handlers):
+        logger.addHandler(Told())
+    logger.setLevel(logging.ERROR if quiet else logging.INFO if verbose else logging.WARNING)
+
+
+def tell_rejected(study: object, folder: Path) -> None:
+    """One line on rows that could not be used; with `-q` too, since those sites are missing everywhere."""
     scenario = study.scenario  # type: ignore[attr-defined]  # a Study; naming it would import everything
     if scenario.sites is None:
         return
     rejected = study.sites.rejected  # type: ignore[attr-defined]
     if rejected:
         rows = "row" if len(rejected) == 1 else "rows"
-        say(
-            f"{len(rejected)} {rows} of {scenario.sites.file.name} could not be used; see {folder / 'rejected.csv'}"
-        )
+        file = scenario.sites.file.name
+        say(f"{len(rejected)} {rows} of {file} could not be used; see {folder / 'rejected.csv'}")

@@ -35,15 +35,16 @@ def command(
     debug: bool,
 ) -> None:
     """Isolines of layers as vector lines with their level, one GeoPackage layer each."""
-    from geoskew.outputs.files import require_free
     from geoskew.study.core import Study
+    from geoskew.study.outfiles import require_folder, require_free
     from geoskew.study.rasters import write_study_contours
 
     study = Study(scenario, needs_sites=False)
     study.scenario.require("region", for_what="contours")
-    require_free([out], overwrite=overwrite)
+    require_folder(out.parent)
+    require_free(study, [out], overwrite=overwrite)
     with console.progress(quiet=quiet) as report:
         remarks = write_study_contours(study, out, layers or None, every=every, report=report)
     for remark in remarks:
         console.say(remark, quiet=quiet)
-    console.say(f"wrote {out}", quiet=quiet)
+    console.say(f"wrote {out}; {study.judged}", quiet=quiet)

@@ -13,7 +13,7 @@ from geoskew.cli import options
 @click.option(
     "--out",
     "out",
-    type=click.Path(path_type=Path),
+    type=options.HomePath(),
     default=None,
     metavar="DIR",
     help="Folder for the results. [maps/NAME in a checkout, else geoskew-NAME]",

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import contextlib
 import importlib
+import io
 import os
 import sys
 from collections.abc import Sequence
@@ -11,6 +13,7 @@ from typing import Any, Final
 import click
 
 from geoskew import __version__
+from geoskew.cli import console
 from geoskew.errors import GeoskewError, InputError
 
 # Name of a command and what it does, in the order of the help; the module geoskew.cli.NAME is
@@ -62,8 +65,8 @@ class LazyCommands(click.Group):
             from difflib import get_close_matches
 
             close = get_close_matches(args[0], COMMANDS, n=1)
-            hint = f" Did you mean {close[0]}?" if close else " 'geoskew --help' lists the commands."
-            raise click.UsageError(f"No command is named {args[0]!r}.{hint}", ctx)
+            hint = f"; did you mean {close[0]}?" if close else ""
+            raise click.UsageError(f"no command is named {args[0]!r}{hint}", ctx)
         return super().resolve_command(ctx, args)
 
 
@@ -83,47 +86,65 @@ def commands() -> None:
 
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run a command line and return the exit status: 0 done, 1 failed, 2 wrong input, 130 interrupted."""
-    arguments = list(sys.argv[1:] if arguments is None else arguments)
-    debug = "--debug" in arguments
+    arguments = list(sys.argv[1:] if arguments is None else arguments) or ["--help"]
+    _encodable()
     try:
         result: Any = commands.main(args=arguments, prog_name="geoskew", standalone_mode=False)
         sys.stdout.flush()
         return result if isinstance(result, int) else 0
-    except click.exceptions.Exit as stop:
-        return stop.exit_code
     except (KeyboardInterrupt, click.exceptions.Abort):
-        _say("interrupted; nothing half-written was left under a final name")
+        console.say("interrupted; nothing half-written was left under a final name")
         return 130
     except click.ClickException as error:
-        error.show(sys.stderr)
+        console.say(_usage(error))
         return 2
+    except SystemExit as stop:
+        # click ends the program by itself when the reader of our output has gone: no failure either.
+        if not isinstance(stop.__context__, BrokenPipeError):
+            raise
+        return _reader_gone()
     except BrokenPipeError:
-        # The reader of our output has gone (`| head`): not a failure; keep Python's own flush quiet.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        return 0
-    except InputError as error:
-        if debug:
+        return _reader_gone()
+    except (GeoskewError, MemoryError, OSError) as error:
+        if "--debug" in arguments:
             raise
+        return _told(error)
+
+
+def _told(error: Exception) -> int:
+    """Say an error in one line a problem and return its exit status."""
+    if isinstance(error, InputError):
         for problem in error.problems:
-            _say(str(problem))
+            console.say(str(problem))
         return error.exit_status
-    except GeoskewError as error:
-        if debug:
-            raise
-        _say(str(error))
+    if isinstance(error, GeoskewError):
+        console.say(str(error))
         return error.exit_status
-    except MemoryError:
-        if debug:
-            raise
-        _say("the machine's memory is not enough; use a coarser step or a smaller region")
+    if isinstance(error, MemoryError):
+        console.say("the machine's memory is not enough; use a coarser step or a smaller region")
         return 1
-    except OSError as error:
-        if debug:
-            raise
-        where = f"{error.filename}: " if error.filename else ""
-        _say(f"{where}{error.strerror or error}")
-        return 1
+    where = getattr(error, "filename", None)
+    reason = getattr(error, "strerror", None) or error
+    console.say(f"{where}: {reason}" if where else str(reason))
+    return 1
 
 
-def _say(text: str) -> None:
-    print(f"geoskew: {text}", file=sys.stderr)
+def _usage(error: click.ClickException) -> str:
+    """A wrong command line in one line, with where to read on."""
+    message = " ".join(error.format_message().split()).rstrip(".")
+    context = getattr(error, "ctx", None)
+    return f"{message}; '{context.command_path if context else 'geoskew'} --help' tells more"
+
+
+def _encodable() -> None:
+    """Never stop at a sign that the terminal's encoding lacks."""
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper) and stream.errors == "strict":
+            stream.reconfigure(errors="backslashreplace")
+
+
+def _reader_gone() -> int:
+    """Keep quiet when the reader of our output has gone (`| head`), Python's own last flush included."""
+    with contextlib.suppress(OSError, ValueError):  # a stream without a file has nothing to keep quiet
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    return 0

@@ -2,29 +2,52 @@
 
 from __future__ import annotations
 
+import os
+from collections.abc import Callable
+from functools import wraps
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeAlias
 
 import click
 
-scenario = click.argument("scenario", type=click.Path(path_type=Path))
+from geoskew.cli import console
+
+Decorator: TypeAlias = Callable[[Callable[..., Any]], Callable[..., Any]]
+
+
+class HomePath(click.Path):
+    """A path in which ~ stands for the home folder, as behind an equals sign no shell replaces it."""
+
+    def __init__(self) -> None:
+        super().__init__(path_type=Path)
+
+    def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> Any:
+        """The path with the home folder in it."""
+        path = Path(os.fsdecode(super().convert(value, param, ctx)))
+        try:
+            return path.expanduser()
+        except RuntimeError:
+            self.fail(f"{value!r}: there is no such home folder; give the path in full", param, ctx)
+
+
+scenario = click.argument("scenario", type=HomePath())
 
 out_folder = click.option(
     "--out",
     "out",
-    type=click.Path(path_type=Path),
+    type=HomePath(),
     required=True,
     metavar="DIR",
     help="Folder for the results.",
 )
 
 
-def out_file(endings: str) -> Any:
+def out_file(endings: str) -> Decorator:
     """`--out FILE`, with the endings that choose the format."""
     return click.option(
         "--out",
         "out",
-        type=click.Path(path_type=Path),
+        type=HomePath(),
         required=True,
         metavar="FILE",
         help=f"File to write; its ending chooses the format: {endings}.",
@@ -68,10 +91,20 @@ tiles = click.option(
 )
 
 
-def common(function: Any) -> Any:
+def common(function: Callable[..., Any]) -> Callable[..., Any]:
     """`-q`, `-v` and `--debug`, which every command takes."""
-    function = click.option("--debug", is_flag=True, help="Show the program's own trace on an error.")(
-        function
-    )
-    function = click.option("-v", "--verbose", is_flag=True, help="Say more about what is done.")(function)
-    return click.option("-q", "--quiet", is_flag=True, help="Say nothing but errors.")(function)
+    debug = click.option("--debug", is_flag=True, help="Show the program's own trace on an error.")
+    verbose = click.option("-v", "--verbose", is_flag=True, help="Say more about what is done.")
+    quiet = click.option("-q", "--quiet", is_flag=True, help="Say nothing but errors and unusable rows.")
+    return quiet(verbose(debug(listening(function))))
+
+
+def listening(function: Callable[..., Any]) -> Callable[..., Any]:
+    """Let the package's own warnings through as `-q` and `-v` have it."""
+
+    @wraps(function)
+    def command(*, quiet: bool, verbose: bool, **rest: Any) -> Any:
+        console.listen(quiet=quiet, verbose=verbose)
+        return function(quiet=quiet, verbose=verbose, **rest)
+
+    return command

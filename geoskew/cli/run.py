@@ -54,7 +54,7 @@ def run_and_tell(study: object, out: Path, settings: object, *, quiet: bool, ver
 
     with console.progress(quiet=quiet) as report:
         written = run(study, out, settings, report)  # type: ignore[arg-type]  # typed lazily: the import is heavy
-    console.tell_rejected(study, out, quiet=quiet)
+    console.tell_rejected(study, out)
     for remark in written.remarks:
         console.say(remark, quiet=quiet)
     if verbose:

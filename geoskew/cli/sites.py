@@ -20,17 +20,16 @@ def command(
 ) -> None:
     """The assessed site list; rows that cannot be used go to rejected.csv beside it."""
     from geoskew.outputs import tables
-    from geoskew.outputs.files import require_free
     from geoskew.study.core import Study
+    from geoskew.study.outfiles import require_free_with_rejected, write_rejected
 
     tables.require_format(out)
-    rejected = out.parent / "rejected.csv"
     study = Study(scenario, strict=strict)
-    require_free([out], overwrite=overwrite)
+    require_free_with_rejected(study, out, overwrite=overwrite)
     assessed = study.assessed
     tables.write_table(out, assessed.table, columns=assessed.columns)
-    tables.write_rejected(rejected, study.sites.rejected)
-    console.tell_rejected(study, out.parent, quiet=quiet)
+    write_rejected(study, out)
+    console.tell_rejected(study, out.parent)
     for warning in study.sites.warnings:
         console.say(warning, quiet=quiet)
     console.say(f"wrote {out}: {len(assessed.table)} sites; {study.judged}", quiet=quiet)

@@ -22,17 +22,19 @@ def command(
 
     Ctrl-C ends the planning early and writes the best plan so far.
     """
-    from geoskew.outputs.files import require_free
     from geoskew.outputs.visits import require_known_ending, write_visits
     from geoskew.study.core import Study
+    from geoskew.study.outfiles import require_free_with_rejected, write_rejected
     from geoskew.study.plan import plan_of
 
     require_known_ending(out)
     study = Study(scenario, strict=strict)
-    require_free([out], overwrite=overwrite)
+    require_free_with_rejected(study, out, overwrite=overwrite)
     with console.progress(quiet=quiet) as report:
         planned = plan_of(study, on_progress=lambda done, total: report("plan of visits", done, total))
     write_visits(out, planned.sheets)
+    write_rejected(study, out)
+    console.tell_rejected(study, out.parent)
     plan = planned.plan
     for note in plan.notes:
         console.say(note, quiet=quiet)

@@ -36,12 +36,14 @@ def make_folder(folder: str | Path) -> Path:
 
     Raises
     ------
+    ExistingFileError
+        Something that is no folder stands in the way.
     OutputError
-        Something that is no folder stands in the way, or the folder cannot be made or written.
+        The folder cannot be made or written.
     """
     folder = Path(folder)
     if folder.exists() and not folder.is_dir():
-        raise OutputError(f"{folder} is a file, not a folder; give another name for the results")
+        raise ExistingFileError(f"{folder} is a file, not a folder; give another name for the results")
     try:
         folder.mkdir(parents=True, exist_ok=True)
         if not (folder / RECORD).exists():
@@ -82,6 +84,11 @@ def is_ours(path: str | Path) -> bool:
     """Whether a file is a result that was written here before and has not been changed since."""
     path = Path(path)
     return _state(path) in _load(path.parent).get(path.name, [])
+
+
+def is_empty_record(path: Path) -> bool:
+    """Whether a file is the record of a folder of ours into which nothing has been written yet."""
+    return path.name == RECORD and path.is_file() and not _load(path.parent)
 
 
 @contextmanager

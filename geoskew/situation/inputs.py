@@ -7,6 +7,7 @@ from typing import Any, Protocol
 
 from numpy.typing import ArrayLike
 
+from geoskew.errors import InputError, Problem
 from geoskew.geometry import Array
 from geoskew.scenario import Scenario
 
@@ -36,9 +37,18 @@ def prepare(scenario: Scenario) -> Inputs:
     Raises
     ------
     InputError
-        A footprint cannot be used; the message names file and feature.
+        Footprints that cannot be used, those of both satellites; the messages name file and feature.
     """
-    return Inputs(_coverage(scenario.outgoing), _coverage(scenario.incoming))
+    fields: list[Coverage | None] = []
+    problems: dict[Problem, None] = {}
+    for satellite in (scenario.outgoing, scenario.incoming):
+        try:
+            fields.append(_coverage(satellite))
+        except InputError as error:
+            problems |= dict.fromkeys(error.problems)
+    if problems:
+        raise InputError(problems)
+    return Inputs(*fields)
 
 
 def _coverage(satellite: Any) -> Coverage | None:

@@ -6,6 +6,7 @@ from pathlib import Path
 from typing import Final
 
 from geoskew.errors import InputError, Problem
+from geoskew.fieldwork.visits import read_distances
 from geoskew.layers import REGISTRY
 from geoskew.study.core import Study
 from geoskew.study.run import final_names
@@ -18,34 +19,38 @@ BYTES_A_SITE: Final = 12_000
 
 
 def check(path: Path) -> tuple[list[Problem], list[str]]:
-    """All problems found, and lines on what a run would write.
+    """All problems found, rejected rows included, and lines on what a run would write.
 
     Raises
     ------
     InputError
         The scenario file itself has problems; all of them are in it.
     """
-    study = Study(path, needs_sites=True)
-    problems: list[Problem] = []
-    lines = [f"{study.scenario.title}", study.judged]
-    for read in (_footprints, _region, _sites):
-        try:
-            lines += read(study, problems)
-        except InputError as error:
-            problems += error.problems
-    if not problems:
+    study = Study(path)
+    problems = study.problems() + _distances(study)
+    if problems:
+        return problems + _rejected(study), []
+    lines = [study.scenario.title, study.judged, *_region(study), *_sites(study)]
+    if study.scenario.region is not None or study.scenario.sites is not None:
         names = final_names(study, Path("DIR"))
-        lines.append(f"a run writes {len(names)} files, about {_size(_bytes(study))} in all:")
+        lines.append(f"a run writes {len(names)} files, about {_size(foretold_bytes(study))} in all:")
         lines += [f"  {name.as_posix()}" for name in names]
-    return problems, lines
+    return _rejected(study), lines
 
 
-def _footprints(study: Study, problems: list[Problem]) -> list[str]:
-    _ = study.inputs
+def _distances(study: Study) -> list[Problem]:
+    """Read the file of distances, if any, for its own sake: which places it names is no fault."""
+    visits = study.scenario.visits
+    if visits is None or visits.distances is None:
+        return []
+    try:
+        read_distances(visits.distances, {})
+    except InputError as error:
+        return list(error.problems)
     return []
 
 
-def _region(study: Study, problems: list[Problem]) -> list[str]:
+def _region(study: Study) -> list[str]:
     if study.scenario.region is None:
         return ["no [region]: no rasters, no contours"]
     grid = study.grid
@@ -53,16 +58,28 @@ def _region(study: Study, problems: list[Problem]) -> list[str]:
     return [f"region: {grid.columns} × {grid.rows} cells of {grid.step:g}{unit}, {grid.cells:,} in all"]
 
 
-def _sites(study: Study, problems: list[Problem]) -> list[str]:
+def _rejected(study: Study) -> list[Problem]:
+    """Rows of the site list that cannot be used: each is a problem here."""
+    sites = study.scenario.sites
+    try:
+        rejected = [] if sites is None else study.sites.rejected
+    except InputError:
+        return []  # the list as a whole is wrong, and told already
+    return [
+        Problem(one.reason, file=None if sites is None else sites.file, line=one.line) for one in rejected
+    ]
+
+
+def _sites(study: Study) -> list[str]:
     scenario = study.scenario
     if scenario.sites is None:
         return ["no [sites]: no site table, no cards, no visits"]
     found = study.sites
-    problems += [Problem(one.reason, file=scenario.sites.file, line=one.line) for one in found.rejected]
     return [f"sites: {len(found)} usable rows of {scenario.sites.file.name}", *found.warnings]
 
 
-def _bytes(study: Study) -> float:
+def foretold_bytes(study: Study) -> float:
+    """About how many bytes a run writes."""
     total = 0.0
     if study.scenario.region is not None:
         for name in study.raster_names:

@@ -12,10 +12,12 @@ if TYPE_CHECKING:
     from geoskew.study.core import Study
 
 CAUTIONS: Final = (
-    "Work at height only with fall protection and a second person; secure ladders, keep off wet, icy or weak roofs.",
+    "Work at height only with fall protection and a second person; secure ladders, "
+    "keep off wet, icy or weak roofs.",
     "Stop in strong wind and at the first sign of a thunderstorm.",
     "Keep well away from overhead power lines; dish, mast and tools conduct.",
-    "A dish that transmits: switch the transmitter off and secure it before anyone stands in front of the feed.",
+    "A dish that transmits: switch the transmitter off and secure it "
+    "before anyone stands in front of the feed.",
     "Local codes and licensed practice prevail over anything said here.",
 )
 

@@ -6,11 +6,10 @@ from collections.abc import Callable, Mapping, Sequence
 from pathlib import Path
 from tempfile import TemporaryDirectory
 
-from geoskew.errors import OutputError
 from geoskew.outputs import fieldmap
 from geoskew.outputs.fieldmap import MapContent
 from geoskew.study.core import Study
-from geoskew.study.mapcontent import contour_names, map_content, overlay_names
+from geoskew.study.mapcontent import background, contour_names, map_content, overlay_names
 from geoskew.study.plan import can_plan, plan_of
 from geoskew.study.rasters import write_study_rasters
 
@@ -24,17 +23,19 @@ def content_of(
     beside: Path,
     tiles: str | None,
     only: Mapping[str, str],
-    blur_km: float | None,
+    blur_deg: float | None,
     report: Report,
 ) -> MapContent:
     """Everything that the page shows, with fewer sites or coarser places where asked for."""
     study.scenario.require_any("region", "sites", for_what="a field map")
-    if not beside.is_dir():
-        raise OutputError(f"the folder {beside} does not exist; make it or give another path")
+    study.read()
+    background(tiles)
+    overlays = overlay_names(study, layers) if study.scenario.region is not None else ()
     planned = None
     if can_plan(study):
         planned = plan_of(study, on_progress=lambda done, total: report("plan of visits", done, total))
-    overlays = overlay_names(study, layers) if study.scenario.region is not None else ()
+        if planned.plan.interrupted:
+            raise KeyboardInterrupt
     with TemporaryDirectory(prefix=".fieldmap-", dir=beside) as scratch:
         rasters: dict[str, Path] = {}
         if study.scenario.region is not None:
@@ -44,6 +45,6 @@ def content_of(
         content = map_content(study, rasters, overlays=overlays, planned=planned, tiles=tiles)
     if only:
         content = fieldmap.only(content, only)
-    if blur_km is not None:
-        content = fieldmap.blurred(content, blur_km)
+    if blur_deg is not None:
+        content = fieldmap.blurred(content, blur_deg)
     return content

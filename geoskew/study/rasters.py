@@ -12,8 +12,9 @@ from geoskew.engine import computed_blocks
 from geoskew.errors import InputError
 from geoskew.evaluate import chosen
 from geoskew.layers import REGISTRY
-from geoskew.outputs import contours, files, raster
+from geoskew.outputs import contours, raster
 from geoskew.study.core import Study
+from geoskew.study.outfiles import folder_of_results, require_free
 
 Report = Callable[[str, float, float], None]
 
@@ -59,23 +60,27 @@ def write_study_rasters(
 ) -> list[Path]:
     """Compute layers block by block and write them into a folder."""
     wanted = chosen(study.scenario, names, sites=False)
+    study.read()
     grid, inputs = study.grid, study.inputs
-    files.require_free([folder / f"{name}.tif" for name in wanted], overwrite=overwrite)
-    files.make_folder(folder)
+    require_free(study, [folder / f"{name}.tif" for name in wanted], overwrite=overwrite)
     phases = {"cells": "computing cells", "files": "finishing GeoTIFFs"}
-    return raster.write_rasters(
-        computed_blocks(study.scenario, inputs, grid, wanted, workers=workers),
-        grid=grid,
-        layers=[REGISTRY[name] for name in wanted],
-        folder=folder,
-        tags=raster_tags(study),
-        nodata=nodata,
-        precision=precision,
-        compress=compress,
-        on_progress=None
-        if report is None
-        else lambda phase, done, total: report(phases.get(phase, phase), done, total),
-    )
+
+    def told(phase: str, done: int, total: int) -> None:
+        if report is not None:
+            report(phases.get(phase, phase), done, total)
+
+    with folder_of_results(folder):
+        return raster.write_rasters(
+            computed_blocks(study.scenario, inputs, grid, wanted, workers=workers),
+            grid=grid,
+            layers=[REGISTRY[name] for name in wanted],
+            folder=folder,
+            tags=raster_tags(study),
+            nodata=nodata,
+            precision=precision,
+            compress=compress,
+            on_progress=told,
+        )
 
 
 def contoured(names: Sequence[str] | None, study: Study) -> tuple[str, ...]:
@@ -101,7 +106,7 @@ def write_study_contours(
         if REGISTRY[name].is_class:
             raise InputError(f"layer {name} holds classes, which have no contours; leave it out")
     # Beside the result, since the system's folder for temporary files may be small.
-    with TemporaryDirectory(prefix=".contours-", dir=_existing(path.parent)) as scratch:
+    with TemporaryDirectory(prefix=".contours-", dir=path.parent) as scratch:
         made = write_study_rasters(study, Path(scratch), wanted, report=report)
         return contours.write_contours(
             path,
@@ -109,11 +114,3 @@ def write_study_contours(
             layers=[REGISTRY[name] for name in wanted],
             every=every,
         )
-
-
-def _existing(folder: Path) -> Path:
-    from geoskew.errors import OutputError
-
-    if not folder.is_dir():
-        raise OutputError(f"the folder {folder} does not exist; make it or give another path")
-    return folder

@@ -12,11 +12,12 @@ import numpy as np
 
 from geoskew.decision import ACTIONS
 from geoskew.layers import REGISTRY
-from geoskew.outputs import cards, contours, fieldmap, files, summary, tables, visits
+from geoskew.outputs import cards, contours, fieldmap, summary, tables, visits
 from geoskew.outputs.tables import ColumnInfo, layer_column
 from geoskew.study.core import Study
 from geoskew.study.facts import CAUTIONS, card_facts
-from geoskew.study.mapcontent import contour_names, map_content, overlay_names, provenance
+from geoskew.study.mapcontent import background, contour_names, map_content, overlay_names, provenance
+from geoskew.study.outfiles import folder_of_results, require_free
 from geoskew.study.plan import Planned, can_plan, judged_suffix, plan_of
 from geoskew.study.rasters import contoured, write_study_rasters
 
@@ -75,24 +76,23 @@ def run(study: Study, folder: Path, settings: Settings, report: Report) -> Writt
     """
     study.scenario.require_any("region", "sites", for_what="a run")
     # All inputs are read before anything is written.
-    table = study.assessed.table if study.scenario.sites is not None else None
-    _ = study.inputs, study.scenario.region is None or study.grid
-    files.require_free(final_names(study, folder), overwrite=settings.overwrite)
-    files.make_folder(folder)
+    study.read()
+    background(settings.tiles)
+    require_free(study, final_names(study, folder), overwrite=settings.overwrite)
     written = Written()
-    rasters = _rasters(study, folder, settings, written, report)
-    planned = _sites_and_plan(study, folder, written, report)
-    report("field map", 0, 1)
-    content = map_content(
-        study, rasters, overlays=overlay_names(study, None), planned=planned, tiles=settings.tiles
-    )
-    size = fieldmap.write_fieldmap(folder / "fieldmap.html", content)
-    written.files.append(folder / "fieldmap.html")
-    if remark := fieldmap.size_remark(size):
-        written.remarks.append(remark)
-    report("field map", 1, 1)
-    _lists(study, folder, rasters, planned, written)
-    if table is not None:
+    with folder_of_results(folder):
+        rasters = _rasters(study, folder, settings, written, report)
+        planned = _sites_and_plan(study, folder, written, report)
+        report("field map", 0, 1)
+        overlays = overlay_names(study, None)
+        content = map_content(study, rasters, overlays=overlays, planned=planned, tiles=settings.tiles)
+        size = fieldmap.write_fieldmap(folder / "fieldmap.html", content)
+        written.files.append(folder / "fieldmap.html")
+        if remark := fieldmap.size_remark(size):
+            written.remarks.append(remark)
+        report("field map", 1, 1)
+        _lists(study, folder, rasters, planned, written)
+    if study.scenario.sites is not None:
         written.remarks += study.sites.warnings
     return written
 
@@ -142,6 +142,8 @@ def _sites_and_plan(study: Study, folder: Path, written: Written, report: Report
         for ending in VISIT_ENDINGS:
             visits.write_visits(folder / f"visits{ending}", planned.sheets)
             written.files.append(folder / f"visits{ending}")
+        if planned.plan.interrupted:
+            raise KeyboardInterrupt
         written.remarks += planned.plan.notes
     if study.scenario.changeover is not None:
         report("job cards", 0, 1)

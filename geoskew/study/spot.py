@@ -25,7 +25,7 @@ def spot_values(
     scenario_path: Path, latitude: float, longitude: float, height: float | None
 ) -> dict[str, Value]:
     """Every layer's value at one place, None where there is none; `action` by its name."""
-    scenario = load(scenario_path)
+    scenario = load(scenario_path, sites_may_be_missing=True)
     values = evaluate(scenario, spot_places(latitude, longitude, height), available(scenario))
     return {name: plain(name, value[()]) for name, value in values.items()}
 
@@ -64,6 +64,6 @@ def spot_budget(
     scenario_path: Path, latitude: float, longitude: float, height: float | None
 ) -> tuple[str, dict[str, Any]]:
     """The link budget as text and as data."""
-    scenario: Scenario = load(scenario_path)
+    scenario: Scenario = load(scenario_path, sites_may_be_missing=True)
     data = budget(scenario, spot_places(latitude, longitude, height))
     return budget_as_text(data), data

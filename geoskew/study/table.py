@@ -14,8 +14,8 @@ from geoskew.layers import REGISTRY
 from geoskew.outputs.tables import ColumnInfo, layer_column
 from geoskew.places import Places
 from geoskew.scenario import Scenario
-from geoskew.situation import Inputs, Situation
 from geoskew.sites import SiteList
+from geoskew.situation import Inputs, Situation
 from geoskew.study.meanings import GIVEN
 
 if TYPE_CHECKING:
@@ -87,7 +87,9 @@ def _values(
             carriers = np.array([one.name for one in situation.carriers(moment)], dtype=object)
             weakest = np.broadcast_to(situation.weakest(moment), places.shape)
             usable = situation.usable_before if moment == "before" else situation.usable_after
-            values[f"weakest_{moment}"] = np.where(usable, carriers[weakest], None)
+            names_of = np.array(carriers[weakest], dtype=object)
+            names_of[~usable] = None
+            values[f"weakest_{moment}"] = names_of
     return values
 
 

@@ -18,7 +18,7 @@ from geoskew.outputs.fieldmap.content import (
     Tiles,
 )
 from geoskew.outputs.fieldmap.privacy import blurred, only
-from geoskew.outputs.fieldmap.writing import compose, size_remark, write_fieldmap
+from geoskew.outputs.fieldmap.writing import compose, size_remark, tile_origin, write_fieldmap
 
 __all__ = [
     "Basemap",
@@ -34,5 +34,6 @@ __all__ = [
     "compose",
     "only",
     "size_remark",
+    "tile_origin",
     "write_fieldmap",
 ]

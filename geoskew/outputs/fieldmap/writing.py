@@ -95,7 +95,7 @@ def compose(content: MapContent) -> str:
         zoom=4,
         meta=meta,
         blocks=blocks,
-        tile_origin=_tile_origin(content.tiles),
+        tile_origin=tile_origin(content.tiles),
     )
 
 
@@ -168,7 +168,14 @@ def _satellite(facts: SatelliteFacts) -> dict[str, Any]:
     }
 
 
-def _tile_origin(tiles: Tiles | None) -> str:
+def tile_origin(tiles: Tiles | None) -> str:
+    """Scheme and host of an online background, empty where there is none.
+
+    Raises
+    ------
+    InputError
+        The address is not that of a tile server.
+    """
     if tiles is None:
         return ""
     found = re.match(r"^(https://[A-Za-z0-9.{}-]+(?::\d+)?)/", tiles.url)

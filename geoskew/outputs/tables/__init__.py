@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 from geoskew.errors import InputError, OutputError
 from geoskew.outputs import files
 from geoskew.outputs.tables.columns import ColumnInfo, layer_column, settled
-from geoskew.outputs.tables.lists import write_dictionary, write_rejected
+from geoskew.outputs.tables.lists import is_rejected_list, write_dictionary, write_rejected
 from geoskew.outputs.tables.spreadsheet import write_xlsx
 from geoskew.outputs.tables.text import write_csv, write_geojson
 from geoskew.outputs.tables.vector import write_geopackage, write_parquet
@@ -20,6 +20,7 @@ if TYPE_CHECKING:
 __all__ = [
     "ENDINGS",
     "ColumnInfo",
+    "is_rejected_list",
     "layer_column",
     "require_format",
     "write_dictionary",

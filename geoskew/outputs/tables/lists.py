@@ -5,10 +5,12 @@ from __future__ import annotations
 import csv
 from collections.abc import Iterable, Sequence
 from pathlib import Path
-from typing import Protocol
+from typing import Final, Protocol
 
 from geoskew.outputs import files
 from geoskew.outputs.tables.columns import ColumnInfo
+
+REJECTED_HEADER: Final = ("line", "id", "reason", "row")
 
 
 class RejectedRow(Protocol):
@@ -39,9 +41,15 @@ def write_rejected(path: Path, rejected: Iterable[RejectedRow]) -> None:
     OutputError
         The file could not be written.
     """
-    _write(
-        path, ("line", "id", "reason", "row"), ((one.line, one.id, one.reason, one.row) for one in rejected)
-    )
+    _write(path, REJECTED_HEADER, ((one.line, one.id, one.reason, one.row) for one in rejected))
+
+
+def is_rejected_list(path: Path) -> bool:
+    """Whether a file is a list of rejected rows, told by its header."""
+    if not path.is_file():
+        return False
+    with path.open("rb") as file:
+        return file.readline(100).rstrip(b"\r\n") == ",".join(REJECTED_HEADER).encode()
 
 
 def write_dictionary(path: Path, columns: Sequence[ColumnInfo]) -> None:
