@@ -88,9 +88,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
     """Run a command line and return the exit status: 0 done, 1 failed, 2 wrong input, 130 interrupted."""
     arguments = list(sys.argv[1:] if arguments is None else arguments) or ["--help"]
     _encodable()
+    streams = sys.stdout, sys.stderr
     try:
         result: Any = commands.main(args=arguments, prog_name="geoskew", standalone_mode=False)
-        sys.stdout.flush()
+        click.echo(nl=False)  # a full disk or a reader that has gone shows now, not at the very end
         return result if isinstance(result, int) else 0
     except (KeyboardInterrupt, click.exceptions.Abort):
         console.say("interrupted; nothing half-written was left under a final name")
@@ -99,9 +100,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
         console.say(_usage(error))
         return 2
     except SystemExit as stop:
-        # click ends the program by itself when the reader of our output has gone: no failure either.
-        if not isinstance(stop.__context__, BrokenPipeError):
-            raise
+        # click ends the program by itself when the reader of our output has gone, other streams in place.
+        if streams == (sys.stdout, sys.stderr):
+            return stop.code if isinstance(stop.code, int) else 0
+        sys.stdout, sys.stderr = streams
         return _reader_gone()
     except BrokenPipeError:
         return _reader_gone()
