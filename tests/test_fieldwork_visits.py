@@ -97,31 +97,52 @@ def check(found: Plan, table: pd.DataFrame, crews: Iterable[Crew], *, overlap_ho
     assert all(found.unreached["reason"].str.len() > 10)
     assert not found.days.duplicated(["crew", "day"]).any()
     assert found.days["visits"].sum() == len(visited)
-    loads = found.days.set_index(["crew", "day"])
-    for (name, day), stops in found.visits.groupby(["crew", "day"]):
-        crew = by_name[name]
-        assert working(crew, day)
-        assert day >= FIRST
-        assert list(stops["order"]) == list(range(1, len(stops) + 1))
-        assert len(stops) <= crew.visits_per_day
-        place = sites.loc[stops["id"]]
-        assert stops["action"].tolist() == place["action"].tolist()
-        lon = [crew.base.lon_deg, *place["lon"], crew.base.lon_deg]
-        lat = [crew.base.lat_deg, *place["lat"], crew.base.lat_deg]
-        load = loads.loc[(name, day)]
-        assert load["visits"] == len(stops)
-        assert load["km"] <= crew.km_per_day + 1e-6
-        # A sphere against the ellipsoid: at most 0.6 % (flattening 1/298, twice that on a meridian).
-        assert load["km"] == pytest.approx(road(lon, lat), rel=0.006, abs=1e-6)
-        for k, leg in enumerate(stops["km_leg"]):
-            assert leg == pytest.approx(road(lon[k : k + 2], lat[k : k + 2]), rel=0.006, abs=1e-6)
-        starts, ends = hours(crew, day)
-        if (place["action"] == "preset").any():
-            assert (place["action"] == "preset").all()
-            assert ends <= CHANGEOVER
-        else:
-            assert ends > CHANGEOVER
-            assert starts <= CHANGEOVER + timedelta(hours=overlap_hours) + timedelta(days=3)
+    stops_of = dict(list(found.visits.groupby(["crew", "day"])))
+    assert set(stops_of) == {(d.crew, d.day) for d in found.days.itertuples() if d.visits}
+    for name, days in found.days.sort_values("day").groupby("crew"):
+        crew = by_name[str(name)]
+        base = (crew.base.lon_deg, crew.base.lat_deg)
+        here, slept = base, None
+        since = 0.0  # driven since the last stop or the base
+        for load in days.itertuples():
+            assert working(crew, load.day)
+            assert load.day >= FIRST
+            if slept is not None:  # a round goes on where the night was, on the very next day
+                assert load.day == slept + timedelta(days=1)
+            assert (load.start_lon, load.start_lat) == pytest.approx(here)
+            stops = stops_of.get((name, load.day), found.visits[:0])
+            place = sites.loc[stops["id"]]
+            assert load.visits == len(stops) <= crew.visits_per_day
+            assert list(stops["order"]) == list(range(1, len(stops) + 1))
+            assert stops["action"].tolist() == place["action"].tolist()
+            assert load.km <= crew.km_per_day + 1e-5
+            lon = [load.start_lon, *place["lon"], load.end_lon]
+            lat = [load.start_lat, *place["lat"], load.end_lat]
+            # A sphere against the ellipsoid: at most 0.6 % (flattening 1/298, twice that on a meridian).
+            assert load.km == pytest.approx(road(lon, lat), rel=0.006, abs=1e-3)
+            for k, leg in enumerate(stops["km_leg"]):
+                since += road(lon[k : k + 2], lat[k : k + 2])
+                assert leg == pytest.approx(since, rel=0.006, abs=1e-3)
+                since = 0.0
+            since += road(lon[-2:], lat[-2:])
+            if load.night == "base":
+                assert (load.end_lon, load.end_lat) == pytest.approx(base)
+                here, slept, since = base, None, 0.0
+            else:
+                here, slept = (load.end_lon, load.end_lat), load.day
+            _check_time(crew, load.day, place["action"], overlap_hours)
+        assert slept is None, "every round ends at the base"
+
+
+def _check_time(crew: Crew, day: date, actions: pd.Series, overlap_hours: float) -> None:
+    """Visits ahead end before the changeover; the others do not, and stay near it."""
+    starts, ends = hours(crew, day)
+    if (actions == "preset").any():
+        assert (actions == "preset").all()
+        assert ends <= CHANGEOVER
+    elif len(actions):
+        assert ends > CHANGEOVER
+        assert starts <= CHANGEOVER + timedelta(hours=overlap_hours) + timedelta(days=3)
 
 
 def greedy(table: pd.DataFrame, crews: list[Crew], days: dict[str, list[date]]) -> tuple[set[str], float]:
@@ -261,7 +282,7 @@ def test_risk_and_weight_go_first_where_time_is_short() -> None:
 def test_missing_crew_days_and_reasons() -> None:
     lat = [-33.5 - 0.01 * k for k in range(7)]
     table = pd.DataFrame({"id": list("abcdefg"), "lat": lat, "lon": -64.0, "action": "preset"})
-    table.loc[6, "lat"] = -38.0  # 500 km away
+    table.loc[6, "lat"] = -38.0  # 500 km away, 650 km on the road
     crew = Crew("one", Base(-64.0, -33.5), visits_per_day=2)
     found = plan(table, [crew], first_day=date(2027, 5, 17))
     # One day of two visits; four near sites are left: two more days of this crew.
@@ -269,12 +290,51 @@ def test_missing_crew_days_and_reasons() -> None:
     assert found.missing_crew_days == 2
     (far,) = found.unreached.loc[found.unreached["id"] == "g", "reason"]
     assert far.startswith("out of reach")
-    assert "one" in far
+    assert "one working day of 400 km" in far
     none = plan(table, [crew], first_day=date(2027, 5, 18))
     assert len(none.visits) == 0
     assert any("works in the time" in reason for reason in none.unreached["reason"])
     nobody = plan(table, [])
     assert set(nobody.unreached["reason"]) == {"no crew is named"}
+
+
+def test_far_site_takes_a_round_with_nights_on_the_road() -> None:
+    # 4.5° of latitude are 500.4 km on the sphere of R = 6371.0088 km, 650.5 km on the road. By hand, with
+    # 400 km a day: 400 | 250.5 and the visit, 149.5 back | 400 | 101.0 home: four days.
+    table = pd.DataFrame({"id": ["far"], "lat": [-38.0], "lon": [-64.0], "action": ["preset"]})
+    crew = Crew("one", Base(-64.0, -33.5))
+    found = plan(table, [crew], first_day=date(2027, 5, 10))
+    check(found, table, [crew])
+    assert found.days["day"].tolist() == [date(2027, 5, 10) + timedelta(days=k) for k in range(4)]
+    leg = math.radians(4.5) * 6371.0088 * DETOUR
+    assert found.days["km"].tolist() == pytest.approx([400.0, 400.0, 400.0, 2 * leg - 1200.0])
+    assert found.days["night"].tolist() == ["road", "road", "road", "base"]
+    assert found.days["visits"].tolist() == [0, 1, 0, 0]
+    # The first night falls after 400 of 650.5 km: 4.5° × 0.6149 south of the base.
+    assert found.days["end_lat"].iloc[0] == pytest.approx(-33.5 - 4.5 * 400.0 / leg)
+    # Three working days in a row are one too few.
+    short = Crew("one", Base(-64.0, -33.5), days=("monday", "tuesday", "wednesday"))
+    (reason,) = plan(table, [short], first_day=date(2027, 5, 10)).unreached["reason"]
+    assert "3 working days in a row of 400 km" in reason
+
+
+def test_round_keeps_visits_a_day_and_does_not_displace_more_than_it_serves() -> None:
+    # Five sites side by side, 400 km away (520 km on the road), two visits a day, and sites near the base.
+    far = pd.DataFrame(
+        {"id": [f"f{k}" for k in range(5)], "lat": -33.5 - 3.6 - 0.01 * np.arange(5), "lon": -64.0}
+    )
+    near = pd.DataFrame({"id": [f"n{k}" for k in range(6)], "lat": -33.5 - 0.01 * np.arange(6), "lon": -64.0})
+    table = pd.concat([far, near], ignore_index=True).assign(action="preset")
+    crew = Crew("one", Base(-64.0, -33.5), visits_per_day=2)
+    wide = plan(table, [crew], first_day=date(2027, 5, 3))
+    check(wide, table, [crew])
+    assert len(wide.visits) == 11
+    # Six days are two too few for both. A day near the base serves two, a day of the round one: by hand it
+    # takes five (out; 2, 2 and 1 visits with 400 km a day; home).
+    tight = plan(table, [crew], first_day=date(2027, 5, 10))
+    check(tight, table, [crew])
+    assert sorted(tight.visits["id"]) == sorted(near["id"])
+    assert tight.missing_crew_days == 5
 
 
 @pytest.mark.parametrize(

@@ -46,6 +46,11 @@ def sheets(**more: object) -> VisitSheets:
             "km": [40.0, 60.0],
             "base_lon": [-64.0, -179.95],
             "base_lat": [-33.5, -17.5],
+            "start_lon": [-64.0, -179.95],
+            "start_lat": [-33.5, -17.5],
+            "end_lon": [-64.0, -179.95],
+            "end_lat": [-33.5, -17.5],
+            "night": ["base", "base"],
         }
     )
     lost = {"id": ["X1"], "action": ["preset"], "reason": ["out of time"], "lon": [-65.0], "lat": [-34.0]}

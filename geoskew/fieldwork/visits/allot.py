@@ -7,6 +7,7 @@ that saves the most kilometres, as long as a day's limits allow it.
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Final
 
@@ -78,6 +79,7 @@ class _Joining:
     tours: list[list[int]]
     length: list[float]
     tour_of: list[int]
+    fits: Callable[[list[int]], bool]
 
     def join(self, i: int, j: int, saved: float) -> bool:
         """Join the tours that end in i and in j, where both are ends and the limits allow it."""
@@ -90,6 +92,8 @@ class _Joining:
             return False
         first = self.tours[a] if self.tours[a][-1] == i else self.tours[a][::-1]
         second = self.tours[b] if self.tours[b][0] == j else self.tours[b][::-1]
+        if not self.fits(first + second):
+            return False
         self.tours[a], self.tours[b] = first + second, []
         self.length[a] = joined
         for k in second:
@@ -98,18 +102,30 @@ class _Joining:
 
 
 def tours_by_savings(
-    base: int, sites: NDArray[np.intp], distances: Distances, limits: Limits
+    base: int,
+    sites: NDArray[np.intp],
+    distances: Distances,
+    limits: Limits,
+    *,
+    fits: Callable[[list[int]], bool] | None = None,
 ) -> list[list[int]]:
-    """Cut sites into day tours that start and end at the base.
+    """Cut sites into tours that start and end at the base.
 
     ``base`` and ``sites`` are numbers of places; each site must be reachable on its own within the
-    limits. Every tour keeps them.
+    limits. Every tour keeps them, and passes ``fits`` where that is given.
     """
     if len(sites) == 0:
         return []
     from_base = distances.km(base, sites)
     count = range(len(sites))
-    joining = _Joining(from_base, limits, [[k] for k in count], (2.0 * from_base).tolist(), list(count))
+    joining = _Joining(
+        from_base,
+        limits,
+        [[k] for k in count],
+        (2.0 * from_base).tolist(),
+        list(count),
+        (lambda tour: True) if fits is None else lambda tour: fits(sites[tour].tolist()),
+    )
     for i, j, saved in _savings(sites, from_base, distances):
         joining.join(i, j, saved)
     _join_short_tours(joining, sites, distances)
@@ -158,7 +174,13 @@ def _savings(
     return [(int(i), int(j), float(saved)) for i, j, saved in table[order]]
 
 
+def legs_of(base: int, tour: list[int], distances: Distances) -> list[float]:
+    """Kilometres to each stop of a tour, and home."""
+    stops = np.array([base, *tour, base], dtype=np.intp)
+    legs: list[float] = distances.km(stops[:-1], stops[1:]).tolist()
+    return legs
+
+
 def tour_km(base: int, tour: list[int], distances: Distances) -> float:
     """Length of a tour with the way out and the way home, km."""
-    stops = np.array([base, *tour, base], dtype=np.intp)
-    return float(distances.km(stops[:-1], stops[1:]).sum())
+    return sum(legs_of(base, tour, distances))

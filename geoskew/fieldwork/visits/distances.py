@@ -51,6 +51,22 @@ class Distances:
                     km[place] = given
         return km
 
+    def between(self, origin: int, target: int, share: float) -> tuple[float, float]:
+        """Longitude and latitude of the point of the great circle at a share of the way, degrees."""
+        ends = np.radians([[self.longitude[k], self.latitude[k]] for k in (origin, target)])
+        vectors = np.column_stack(
+            (
+                np.cos(ends[:, 1]) * np.cos(ends[:, 0]),
+                np.cos(ends[:, 1]) * np.sin(ends[:, 0]),
+                np.sin(ends[:, 1]),
+            )
+        )
+        angle = float(np.arctan2(np.linalg.norm(np.cross(*vectors)), vectors[0] @ vectors[1]))
+        if angle < 1e-12:
+            return float(self.longitude[target]), float(self.latitude[target])
+        x, y, z = np.sin((1.0 - share) * angle) * vectors[0] + np.sin(share * angle) * vectors[1]
+        return float(np.degrees(np.arctan2(y, x))), float(np.degrees(np.arctan2(z, np.hypot(x, y))))
+
     def matrix(self, places: ArrayLike) -> NDArray[np.float64]:
         """The square matrix between some places, km; 0 on the diagonal."""
         number = np.asarray(places, dtype=np.intp)

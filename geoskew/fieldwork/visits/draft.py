@@ -12,6 +12,15 @@ from geoskew.fieldwork.visits.days import CrewDay
 from geoskew.fieldwork.visits.distances import Distances
 
 
+@dataclass(frozen=True)
+class Round:
+    """A tour of several days, on consecutive calendar days of one crew."""
+
+    crew: int
+    days: tuple[CrewDay, ...]
+    tour: list[int]
+
+
 @dataclass
 class Draft:
     """Tours of one kind of visit.
@@ -25,21 +34,27 @@ class Draft:
     limits : tuple of Limits
         Of each crew.
     days : tuple of tuple of CrewDay
-        Each crew's working days of this kind, in order.
+        Each crew's working days of this kind that no round takes, in order.
+    stretch : tuple of int
+        The most consecutive days of each crew, before rounds took any.
     value : ndarray (places,)
         What a visit is worth.
     tours : list of (crew, sites)
         At most as many of one crew as it has days, once ``settle`` was called.
     left : list of int
         Sites without a tour.
+    rounds : list of Round
+        Tours with nights on the road.
     """
 
     distances: Distances
     limits: tuple[Limits, ...]
     days: tuple[tuple[CrewDay, ...], ...]
+    stretch: tuple[int, ...]
     value: NDArray[np.float64]
     tours: list[tuple[int, list[int]]] = field(default_factory=list)
     left: list[int] = field(default_factory=list)
+    rounds: list[Round] = field(default_factory=list)
 
     @property
     def crews(self) -> int:

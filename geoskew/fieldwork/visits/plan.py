@@ -13,6 +13,7 @@ from geoskew.fieldwork.visits.allot import Limits
 from geoskew.fieldwork.visits.days import Crew, days_ahead, days_at
 from geoskew.fieldwork.visits.distances import Distances
 from geoskew.fieldwork.visits.draft import Draft, build, fill, nearest_neighbour
+from geoskew.fieldwork.visits.rounds import add_rounds, longest_stretch
 from geoskew.fieldwork.visits.routing import count_slices, shorten
 from geoskew.fieldwork.visits.sheets import AHEAD, AT_CHANGEOVER, Plan, Rows, plan_of
 
@@ -40,7 +41,8 @@ def plan_visits(
     Sites worth most come first: ``weight`` × (``fail_probability`` + 1), a missing weight counting as 1
     and a missing chance of failure as 100 %. ``preset`` sites are visited from the first day up to the
     changeover; ``turn-at-changeover`` and ``re-aim`` sites on the days that touch the hours in which both
-    satellites work, else on a crew's nearest working day after it.
+    satellites work, else on a crew's nearest working day after it. Days start and end at the base; sites
+    beyond a day's reach are visited on rounds of consecutive working days.
 
     Parameters
     ----------
@@ -90,7 +92,11 @@ def plan_visits(
     # The sites that can only be served at the changeover are planned first: they have the fewest days.
     kinds = ((AT_CHANGEOVER, tuple(at)), (AHEAD, tuple(ahead)))
     drafts = [
-        (Draft(places, limits, days, value), rows.places(actions, len(crews))) for actions, days in kinds
+        (
+            Draft(places, limits, days, tuple(map(longest_stretch, days)), value),
+            rows.places(actions, len(crews)),
+        )
+        for actions, days in kinds
     ]
     interrupted = False
     skipped = 0
@@ -111,10 +117,12 @@ def place_numbers(table: pandas.DataFrame, crews: Sequence[Crew]) -> dict[str, i
 
 def _best_start(empty: Draft, sites: NDArray[np.intp]) -> Draft:
     """The better of the two ways to begin, by what is served and then by kilometres."""
-    plain = Draft(empty.distances, empty.limits, empty.days, empty.value)
+    plain = Draft(empty.distances, empty.limits, empty.days, empty.stretch, empty.value)
     build(empty, sites)
     nearest_neighbour(plain, sites)
-    return max((empty, plain), key=Draft.merit)
+    best = max((empty, plain), key=Draft.merit)
+    add_rounds(best)
+    return best
 
 
 def _shorten_all(
@@ -157,7 +165,10 @@ def _notes(
         f"Days are calendar days at each crew's base; the changeover is {changeover:%Y-%m-%d %H:%M} UTC.",
     ]
     if crews:
-        notes.append("Every day starts and ends at the crew's base; nights on the road are not planned.")
+        notes.append(
+            "Days start and end at the base; only sites beyond a day's reach are visited on rounds with "
+            "nights on the road, on consecutive working days."
+        )
     if skipped:
         notes.append(
             f"The time for shortening tours ran out; {skipped} groups of tours stay as first laid out."

@@ -9,9 +9,10 @@ from typing import TYPE_CHECKING, Any, Final
 import numpy as np
 from numpy.typing import NDArray
 
-from geoskew.fieldwork.visits.allot import tour_km
+from geoskew.fieldwork.visits.allot import legs_of
 from geoskew.fieldwork.visits.days import Crew, CrewDay
-from geoskew.fieldwork.visits.draft import Draft
+from geoskew.fieldwork.visits.draft import Draft, Round
+from geoskew.fieldwork.visits.rounds import Itinerary, itinerary
 from geoskew.fieldwork.visits.unreached import reasons
 
 if TYPE_CHECKING:
@@ -21,6 +22,10 @@ AHEAD: Final = ("preset",)
 AT_CHANGEOVER: Final = ("turn-at-changeover", "re-aim")
 # Columns of the assessed table that a day sheet carries on, where they exist.
 _CARRIED: Final = ("name", "district", "access", "weight", "fail_probability")
+_DAY_COLUMNS: Final = [
+    "crew", "day", "visits", "km", "base_lon", "base_lat", "start_lon", "start_lat", "end_lon", "end_lat",
+    "night",
+]  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -31,10 +36,14 @@ class Plan:
     ----------
     visits : DataFrame
         ``crew``, ``day`` (date), ``order`` (from 1), ``id``, ``action``, ``turn`` (degrees from the present
-        setting, positive clockwise seen from behind), ``km_leg`` (from the stop before, or the base),
+        setting, positive clockwise seen from behind), ``km_leg`` (from the stop before or the base, a night
+        on the way included),
         ``lon``, ``lat``, and the columns name, district, access, weight, fail_probability where given.
     days : DataFrame
-        ``crew``, ``day``, ``visits``, ``km`` (with the way out and home), ``base_lon``, ``base_lat``.
+        ``crew``, ``day``, ``visits``, ``km`` (with the way out and home), ``base_lon``, ``base_lat``,
+        ``start_lon``, ``start_lat``, ``end_lon``, ``end_lat`` (the base, or where the night is spent; on a
+        long road a point of the great circle), ``night`` ("base" or "road"). A day of a round may be
+        spent driving alone.
     unreached : DataFrame
         ``id``, ``action``, ``reason``, ``lon``, ``lat``.
     missing_crew_days : int
@@ -114,57 +123,70 @@ def plan_of(
     days: list[dict[str, Any]] = []
     served: set[int] = set()
     for draft, _ in drafts:
-        for day, tour in _dated(draft):
-            visits += _stops(rows, crews, draft, day, tour)
-            days.append(_day(crews, draft, day, tour))
+        for crew, dates, tour in _dated(draft):
+            cut = itinerary(legs_of(crew, tour, draft.distances), draft.limits[crew])
+            visits += _stops(rows, crews, draft, Round(crew, dates, tour), cut)
+            days += _days(crews, draft, Round(crew, dates, tour), cut)
             served.update(tour)
     lost, missing = reasons(rows.table, crews, drafts, served, interrupted=interrupted)
     order = ["crew", "day", "order"]
     columns = [*order, "id", "action", "turn", "km_leg", "lon", "lat"]
     columns += [name for name in _CARRIED if name in rows.table]
     sheet = pandas.DataFrame(visits, columns=columns).sort_values(order, kind="stable", ignore_index=True)
-    loads = pandas.DataFrame(days, columns=["crew", "day", "visits", "km", "base_lon", "base_lat"])
+    loads = pandas.DataFrame(days, columns=_DAY_COLUMNS)
     loads = loads.sort_values(["crew", "day"], kind="stable", ignore_index=True)
     unreached = pandas.DataFrame(lost, columns=["id", "action", "reason", "lon", "lat"])
     return Plan(sheet, loads, unreached, missing, notes, interrupted)
 
 
-def _dated(draft: Draft) -> list[tuple[CrewDay, list[int]]]:
-    """Each crew's tours on its days: what is worth most goes first."""
-    dated: list[tuple[CrewDay, list[int]]] = []
+def _dated(draft: Draft) -> list[tuple[int, tuple[CrewDay, ...], list[int]]]:
+    """Each crew's tours and rounds with their days: the tour that is worth most goes first."""
+    dated = [(one.crew, one.days, one.tour) for one in draft.rounds]
     for crew in range(draft.crews):
         own = [tour for number, tour in draft.tours if number == crew and tour]
         own.sort(key=lambda tour: (-draft.worth(tour), tour))
         # An interrupt may leave more tours than days: what is worth least then stays out.
-        dated += list(zip(draft.days[crew], own, strict=False))
+        dated += [(crew, (day,), tour) for day, tour in zip(draft.days[crew], own, strict=False)]
     return dated
 
 
 def _stops(
-    rows: Rows, crews: Sequence[Crew], draft: Draft, day: CrewDay, tour: list[int]
+    rows: Rows, crews: Sequence[Crew], draft: Draft, one: Round, cut: Itinerary
 ) -> list[dict[str, Any]]:
-    legs = draft.distances.km(np.array([day.crew, *tour[:-1]]), np.array(tour))
-    stops = []
-    for order, (place, leg) in enumerate(zip(tour, legs, strict=True), start=1):
+    legs = legs_of(one.crew, one.tour, draft.distances)
+    stops: list[dict[str, Any]] = []
+    for k, place in enumerate(one.tour):
         row = rows.table.iloc[place - len(crews)]
         turn = row.get("turn_shared" if row["action"] in AHEAD else "turn_realigned", np.nan)
-        stop = {"crew": crews[day.crew].name, "day": day.day, "order": order, "id": row["id"]}
-        stop |= {"action": row["action"], "turn": turn, "km_leg": float(leg)}
+        order = 1 + sum(1 for day in cut.day_of_stop[:k] if day == cut.day_of_stop[k])
+        stop = {"crew": crews[one.crew].name, "day": one.days[cut.day_of_stop[k]].day, "order": order}
+        stop |= {"id": row["id"], "action": row["action"], "turn": turn, "km_leg": float(legs[k])}
         stop |= {
-            "lon": float(rows.longitude[place - len(crews)]),
-            "lat": float(rows.latitude[place - len(crews)]),
+            "lon": float(draft.distances.longitude[place]),
+            "lat": float(draft.distances.latitude[place]),
         }
         stops.append(stop | {name: row[name] for name in _CARRIED if name in row.index})
     return stops
 
 
-def _day(crews: Sequence[Crew], draft: Draft, day: CrewDay, tour: list[int]) -> dict[str, Any]:
-    base = crews[day.crew].base
-    return {
-        "crew": crews[day.crew].name,
-        "day": day.day,
-        "visits": len(tour),
-        "km": tour_km(day.crew, tour, draft.distances),
-        "base_lon": base.lon_deg,
-        "base_lat": base.lat_deg,
-    }
+def _days(crews: Sequence[Crew], draft: Draft, one: Round, cut: Itinerary) -> list[dict[str, Any]]:
+    base = (float(crews[one.crew].base.lon_deg), float(crews[one.crew].base.lat_deg))
+    places = [one.crew, *one.tour, one.crew]
+    nights = [draft.distances.between(places[k], places[k + 1], share) for k, share in cut.nights]
+    starts, ends = [base, *nights], [*nights, base]
+    return [
+        {
+            "crew": crews[one.crew].name,
+            "day": one.days[k].day,
+            "visits": cut.day_of_stop.count(k),
+            "km": km,
+            "base_lon": base[0],
+            "base_lat": base[1],
+            "start_lon": starts[k][0],
+            "start_lat": starts[k][1],
+            "end_lon": ends[k][0],
+            "end_lat": ends[k][1],
+            "night": "base" if k == len(nights) else "road",
+        }
+        for k, km in enumerate(cut.km_of_day)
+    ]

@@ -25,7 +25,7 @@ def write_calendar(part: Path, sheets: VisitSheets) -> None:
     calendar.add_component(_changeover(sheets))
     by_day = dict(list(stops(sheets).groupby(["crew", "day"], sort=False)))
     for load in sheets.days.to_dict("records"):
-        calendar.add_component(_day(sheets, load, by_day[load["crew"], load["day"]]))
+        calendar.add_component(_day(sheets, load, by_day.get((load["crew"], load["day"]))))
     part.write_bytes(calendar.to_ical())
 
 
@@ -57,7 +57,10 @@ def _day(sheets: VisitSheets, load: dict[Any, Any], visits: Any) -> Any:
     event.add("dtend", day + timedelta(days=1))
     count = f"{load['visits']} visit{'s' if load['visits'] != 1 else ''}"
     event.add("summary", _line(f"{load['crew']}: {count}, {load['km']:.0f} km"))
-    event.add("description", "\n".join(_stop(row) for row in visits.to_dict("records")))
+    lines = [] if visits is None else [_stop(row) for row in visits.to_dict("records")]
+    if load.get("night") == "road":
+        lines.append(f"Night on the road near {load['end_lat']:.3f}, {load['end_lon']:.3f}.")
+    event.add("description", "\n".join(lines))
     event.add("categories", [_line(str(load["crew"]))])
     event.add("geo", (float(load["base_lat"]), float(load["base_lon"])))
     return event

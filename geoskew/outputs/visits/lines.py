@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any, Final
 
 from geoskew.outputs import geopackage
 from geoskew.outputs.geopackage import About
-from geoskew.outputs.visits.sheet import MEANINGS, VisitSheets, stops
+from geoskew.outputs.visits.sheet import DAY_MEANINGS, MEANINGS, VisitSheets, stops
 
 if TYPE_CHECKING:
     import pandas
@@ -18,7 +18,7 @@ _NUMBERS: Final = (
 
 
 def write_lines(part: Path, sheets: VisitSheets) -> None:
-    """Write the layers ``tours`` (a line a crew and day, from the base and back), ``visits``, ``unreached``.
+    """Write the layers ``tours`` (a line a crew and day), ``visits``, ``unreached``.
 
     A line that crosses 180° of longitude runs on past it, so that it stays short on a map.
     """
@@ -32,16 +32,7 @@ def write_lines(part: Path, sheets: VisitSheets) -> None:
         _add(part, "visits", "Point", table, points, "Stops in order of driving")
         points = shapely.points(_numbers(lost, "lon"), _numbers(lost, "lat"))
         _add(part, "unreached", "Point", lost, points, "Sites that cannot be reached in time")
-    tours = [
-        About("crew", MEANINGS["crew"]),
-        About("day", MEANINGS["day"]),
-        About("visits", "Stops of the day"),
-    ]
-    tours += [About("km", "Road of the day with the way out and home (km)")]
-    tours += [
-        About("base_lon", "Longitude of the base (deg)"),
-        About("base_lat", "Latitude of the base (deg)"),
-    ]
+    tours = [About(name, meaning) for name, meaning in DAY_MEANINGS.items() if name in sheets.days]
     described = {
         "visits": [About(str(name), MEANINGS[name]) for name in table.columns],
         "unreached": [About(str(name), MEANINGS[name]) for name in lost.columns],

@@ -24,12 +24,26 @@ MEANINGS: Final = {
     "turn": "Turn of the feed from its present setting (deg), positive clockwise seen from behind the dish",
     "from_behind": "The turn for a person behind the dish who looks towards the satellite",
     "from_front": "The same turn for a person in front of the dish who looks into it",
-    "km_leg": "Road from the stop before, or from the base (km)",
+    "km_leg": "Road from the stop before or from the base, a night on the way included (km)",
     "lon": "Longitude, WGS 84 (deg)",
     "lat": "Latitude, WGS 84 (deg)",
     "weight": "How much the site counts, as given",
     "fail_probability": "Chance that the untouched site fails after the changeover (percent)",
     "reason": "Why the site is not reached in time",
+}
+# Columns of the table of days.
+DAY_MEANINGS: Final = {
+    "crew": MEANINGS["crew"],
+    "day": MEANINGS["day"],
+    "visits": "Stops of the day",
+    "km": "Road of the day with the way out and home (km)",
+    "base_lon": "Longitude of the base (deg)",
+    "base_lat": "Latitude of the base (deg)",
+    "start_lon": "Longitude where the day starts (deg)",
+    "start_lat": "Latitude where the day starts (deg)",
+    "end_lon": "Longitude where the day ends (deg)",
+    "end_lat": "Latitude where the day ends (deg)",
+    "night": "Where the night is spent: base or road",
 }
 _ORDER: Final = tuple(MEANINGS)
 
@@ -39,7 +53,8 @@ class VisitSheets:
     """The tables of a plan of visits, and what all files of it say.
 
     ``visits``: crew, day (date), order, id, action, turn (degrees, NaN: none), km_leg, lon, lat and more;
-    ``days``: crew, day, visits, km, base_lon, base_lat; ``unreached``: id, action, reason, lon, lat;
+    ``days``: crew, day, visits, km, base_*, start_*, end_* (lon, lat), night;
+    ``unreached``: id, action, reason, lon, lat;
     ``changeover``: aware.
     """
 
