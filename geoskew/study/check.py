@@ -2,20 +2,28 @@
 
 from __future__ import annotations
 
+import math
 from pathlib import Path
 from typing import Final
 
 from geoskew.errors import InputError, Problem
 from geoskew.fieldwork.visits import read_distances
 from geoskew.layers import REGISTRY
+from geoskew.outputs.contours.source import MOST_CELLS
 from geoskew.study.core import Study
+from geoskew.study.rasters import contoured
 from geoskew.study.run import final_names
 
-# Bytes a cell that a stored layer takes after compression, as the bundled scenarios have them.
-BYTES_A_CELL: Final = 0.7
-BYTES_A_CLASS_CELL: Final = 0.03
-# Bytes a site of all tables, cards and map together.
-BYTES_A_SITE: Final = 12_000
+# Bytes that a run leaves, as the bundled scenarios have them: of a stored layer by cell, of any GeoTIFF
+# besides, of contours by layer and by cell along the side of a square region, of all that is written
+# about a site, and of what stands in every folder.
+A_CELL: Final = 0.8
+A_CLASS_CELL: Final = 0.03
+A_RASTER: Final = 5_000
+A_CONTOURED_LAYER: Final = 25_000
+A_CONTOURED_SIDE: Final = 170
+A_SITE: Final = 16_000
+A_FOLDER: Final = 700_000
 
 
 def check(path: Path) -> tuple[list[Problem], list[str]]:
@@ -31,7 +39,7 @@ def check(path: Path) -> tuple[list[Problem], list[str]]:
     if problems:
         return problems + _rejected(study), []
     lines = [study.scenario.title, study.judged, *_region(study), *_sites(study)]
-    if study.scenario.region is not None or study.scenario.sites is not None:
+    if study.scenario.region is not None or study.scenario.has_sites:
         names = final_names(study, Path("DIR"))
         lines.append(f"a run writes {len(names)} files, about {_size(foretold_bytes(study))} in all:")
         lines += [f"  {name.as_posix()}" for name in names]
@@ -60,33 +68,36 @@ def _region(study: Study) -> list[str]:
 
 def _rejected(study: Study) -> list[Problem]:
     """Rows of the site list that cannot be used: each is a problem here."""
-    sites = study.scenario.sites
+    if not study.scenario.has_sites:
+        return []
     try:
-        rejected = [] if sites is None else study.sites.rejected
+        found = study.sites
     except InputError:
         return []  # the list as a whole is wrong, and told already
-    return [
-        Problem(one.reason, file=None if sites is None else sites.file, line=one.line) for one in rejected
-    ]
+    return [Problem(one.reason, file=found.source, line=one.line) for one in found.rejected]
 
 
 def _sites(study: Study) -> list[str]:
     scenario = study.scenario
-    if scenario.sites is None:
+    if not scenario.has_sites:
         return ["no [sites]: no site table, no cards, no visits"]
     found = study.sites
-    return [f"sites: {len(found)} usable rows of {scenario.sites.file.name}", *found.warnings]
+    return [f"sites: {len(found)} usable rows of {found.source.name}", *found.warnings]
 
 
 def foretold_bytes(study: Study) -> float:
     """About how many bytes a run writes."""
-    total = 0.0
+    total = float(A_FOLDER)
     if study.scenario.region is not None:
-        for name in study.raster_names:
-            total += study.grid.cells * (BYTES_A_CLASS_CELL if REGISTRY[name].is_class else BYTES_A_CELL)
+        cells, names = study.grid.cells, study.raster_names
+        classes = sum(REGISTRY[name].is_class for name in names)
+        total += A_RASTER * len(names) + cells * (A_CLASS_CELL * classes + A_CELL * (len(names) - classes))
+        # Contours of very large grids are drawn on fewer cells.
+        side = math.sqrt(min(cells, MOST_CELLS))
+        total += len(contoured(None, study)) * (A_CONTOURED_LAYER + A_CONTOURED_SIDE * side)
     if study.scenario.sites is not None:
-        total += len(study.sites) * BYTES_A_SITE
-    return total + 1e6
+        total += A_SITE * len(study.sites)
+    return total
 
 
 def _size(count: float) -> str:
