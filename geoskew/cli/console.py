@@ -91,10 +91,10 @@ def listen(*, quiet: bool, verbose: bool) -> None:
 def tell_rejected(study: object, folder: Path) -> None:
     """One line on rows that could not be used; with `-q` too, since those sites are missing everywhere."""
     scenario = study.scenario  # type: ignore[attr-defined]  # a Study; naming it would import everything
-    if scenario.sites is None:
+    if not scenario.has_sites:
         return
     rejected = study.sites.rejected  # type: ignore[attr-defined]
     if rejected:
         rows = "row" if len(rejected) == 1 else "rows"
-        file = scenario.sites.file.name
-        say(f"{len(rejected)} {rows} of {file} could not be used; see {folder / 'rejected.csv'}")
+        source = study.sites.source.name  # type: ignore[attr-defined]
+        say(f"{len(rejected)} {rows} of {source} could not be used; see {folder / 'rejected.csv'}")

@@ -94,3 +94,4 @@ class Database(Table):
     query: Annotated[str, BeforeValidator(_query)] | None = None
     id: Annotated[str, text("the name of the column that identifies a site")] = "id"
     table: Annotated[str, text("the name of the table for results")] | None = None
+    run: Annotated[str, text("the name that tells this study's rows in that table")] | None = None

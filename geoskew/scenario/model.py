@@ -22,7 +22,7 @@ from geoskew.scenario.values import moment, number, text
 PARTS: Final[dict[str, str]] = {
     "changeover": "changeover = 2027-05-18T03:00:00Z (the moment, with Z or an offset)",
     "region": "[region] with bounds_deg or outline and its step",
-    "sites": '[sites] with file = "sites.csv"',
+    "sites": '[sites] with file = "sites.csv", or [database] with url_env and query',
     "weather": "[weather] with availability_percent",
     "terrain": '[terrain] with dem = "dem.tif"',
     "neighbours": "[[neighbour]] with longitude_deg, polarisation and eirp_dbw",
@@ -78,6 +78,14 @@ class Scenario(Table):
         across = self.incoming.latitude_deg - self.outgoing.latitude_deg
         return max(abs(along), abs(across)) > _SAME_SLOT_DEG
 
+    @property
+    def has_sites(self) -> bool:
+        """Whether there is a site list: of a file, or of a database's query."""
+        return self.sites is not None or (self.database is not None and self.database.query is not None)
+
+    def _has(self, part: str) -> bool:
+        return self.has_sites if part == "sites" else bool(getattr(self, part))
+
     @cached_property
     def input_files(self) -> dict[str, str]:
         """SHA-256 of every input file, by its path relative to the scenario file; read when first asked for.
@@ -105,7 +113,7 @@ class Scenario(Table):
         MissingPartError
             Names the parts and how to give them.
         """
-        if not any(getattr(self, part) for part in parts):
+        if not any(self._has(part) for part in parts):
             ways = ", or ".join(PARTS[part] for part in parts)
             raise MissingPartError(
                 Problem(f"{for_what} needs one of {', '.join(parts)}: add {ways}", file=self.path)
@@ -126,7 +134,7 @@ class Scenario(Table):
         MissingPartError
             Names every part that is missing and how to give it.
         """
-        missing = [part for part in parts if not getattr(self, part)]
+        missing = [part for part in parts if not self._has(part)]
         if missing:
             raise MissingPartError(
                 Problem(f"is missing, and {for_what} needs it: add {PARTS[part]}", file=self.path, key=part)

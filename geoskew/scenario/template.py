@@ -174,5 +174,5 @@ step_deg = 0.25
 #url_env = "SITES_DATABASE"
 #query = "select id, lat, lon from sites"
 #id = "id"
-#table = "assessed_sites"
+#table = "assessed_sites"                   # results go here too; run, default the scenario file's name
 """

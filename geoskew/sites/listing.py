@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from pathlib import Path
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -23,7 +24,7 @@ class Rejected:
     ----------
     line : int
         Line of the file where the row begins, counted from 1; row of the sheet in XLSX; number of
-        the feature, counted from 1, in vector files and Parquet.
+        the feature, counted from 1, in vector files and Parquet, of the row in a query's result.
     id : str
         As far as it could be read.
     reason : str
@@ -62,6 +63,8 @@ class SiteList:
         Line of each site in the file, as in `Rejected`.
     numbers : mapping of str to ndarray
         Every column that holds numbers or yes/no (1 and 0), as (N,) floats; NaN where empty.
+    source : Path
+        The file, or the words for a database's query: where rows are counted, for messages.
     """
 
     frame: DataFrame
@@ -73,6 +76,7 @@ class SiteList:
     warnings: list[str]
     lines: NDArray[np.int64]
     numbers: dict[str, NDArray[np.float64]] = field(default_factory=dict)
+    source: Path = Path("sites")
 
     def __len__(self) -> int:
         """Number of usable sites."""

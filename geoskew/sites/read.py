@@ -125,6 +125,7 @@ def _listing(table: RawTable, found: Headers, checked: Checked) -> SiteList:
         warnings=[*table.warnings, *found.warnings],
         lines=table.lines[rows],
         numbers=numbers,
+        source=table.path,
     )
 
 

@@ -43,7 +43,7 @@ class Study:
         readers: list[Callable[[], object]] = [lambda: self.inputs]
         if self.scenario.region is not None:
             readers.append(lambda: self.grid)
-        if self.scenario.sites is not None and self.needs_sites:
+        if self.scenario.has_sites and self.needs_sites:
             readers.append(lambda: self.sites)
         found: dict[Problem, None] = {}
         for reader in readers:
@@ -77,9 +77,7 @@ class Study:
         self.scenario.require("sites", for_what="an assessed site list")
         found = read_sites(self.scenario, compare=self._has_grid)
         if self.strict and found.rejected:
-            assert self.scenario.sites is not None  # for the type checker: require() has seen it
-            file = self.scenario.sites.file
-            raise InputError(Problem(one.reason, file=file, line=one.line) for one in found.rejected)
+            raise InputError(Problem(one.reason, file=found.source, line=one.line) for one in found.rejected)
         return found
 
     @property

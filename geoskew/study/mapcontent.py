@@ -69,7 +69,7 @@ def map_content(
     scenario = study.scenario
     table = None
     columns: tuple[Any, ...] = ()
-    if scenario.sites is not None:
+    if scenario.has_sites:
         table, columns = study.assessed.table, study.assessed.columns
     lines = [
         line for name in contour_names(study) if name in rasters for line in _isolines(name, rasters[name])
@@ -222,7 +222,7 @@ def shown_bounds(study: Study) -> tuple[float, float, float, float]:
     if study.scenario.region is not None:
         west, south, east, north = grid_in_degrees(study.grid)
         longitudes, latitudes = [west, east], [south, north]
-    if study.scenario.sites is not None:
+    if study.scenario.has_sites:
         places = study.sites.places
         middle = 0.5 * (longitudes[0] + longitudes[1]) if longitudes else float(places.longitude[0])
         near = middle + np.mod(places.longitude - middle + 180.0, 360.0) - 180.0

@@ -100,7 +100,7 @@ def require_free_with_rejected(study: Study, out: Path, *, overwrite: bool) -> N
     if out.name == REJECTED:
         raise InputError(f"{out}: {REJECTED} is the list of rows that cannot be used; give another name")
     names = [out]
-    if study.scenario.sites is not None and not tables.is_rejected_list(rejected):
+    if study.scenario.has_sites and not tables.is_rejected_list(rejected):
         names.append(rejected)
     require_free(study, names, overwrite=overwrite)
 
@@ -113,5 +113,5 @@ def write_rejected(study: Study, out: Path) -> None:
     OutputError
         The file could not be written.
     """
-    if study.scenario.sites is not None:
+    if study.scenario.has_sites:
         tables.write_rejected(out.parent / REJECTED, study.sites.rejected)

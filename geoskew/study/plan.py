@@ -30,7 +30,7 @@ class Planned:
 def can_plan(study: Study) -> bool:
     """Whether the scenario has what a plan of visits needs."""
     scenario = study.scenario
-    return scenario.changeover is not None and bool(scenario.crews) and scenario.sites is not None
+    return scenario.changeover is not None and bool(scenario.crews) and scenario.has_sites
 
 
 def plan_of(study: Study, *, on_progress: Callable[[int, int], None] | None = None) -> Planned:

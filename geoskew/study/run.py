@@ -53,7 +53,7 @@ def final_names(study: Study, folder: Path) -> list[Path]:
     names = ["summary.json", "columns.csv", "fieldmap.html"]
     if scenario.region is not None:
         names += [f"layers/{name}.tif" for name in study.raster_names] + ["contours.gpkg"]
-    if scenario.sites is not None:
+    if scenario.has_sites:
         names += ["sites.gpkg", "sites.csv", "rejected.csv"]
         if scenario.changeover is not None:
             names += ["cards.html", "cards.pdf"]
@@ -92,7 +92,7 @@ def run(study: Study, folder: Path, settings: Settings, report: Report) -> Writt
             written.remarks.append(remark)
         report("field map", 1, 1)
         _lists(study, folder, rasters, planned, written)
-    if study.scenario.sites is not None:
+    if study.scenario.has_sites:
         written.remarks += study.sites.warnings
     return written
 
@@ -128,7 +128,7 @@ def _rasters(
 
 
 def _sites_and_plan(study: Study, folder: Path, written: Written, report: Report) -> Planned | None:
-    if study.scenario.sites is None:
+    if not study.scenario.has_sites:
         return None
     assessed = study.assessed
     for name in ("sites.gpkg", "sites.csv"):
@@ -160,7 +160,7 @@ def _lists(
     study: Study, folder: Path, rasters: dict[str, Path], planned: Planned | None, written: Written
 ) -> None:
     columns: list[ColumnInfo] = []
-    if study.scenario.sites is not None:
+    if study.scenario.has_sites:
         columns += study.assessed.columns
     known = {column.name for column in columns}
     columns += [layer_column(REGISTRY[name]) for name in rasters if name not in known]
@@ -186,7 +186,7 @@ def summary_of(study: Study, rasters: dict[str, Path], planned: Planned | None) 
         "provenance": provenance(study),
         "cautions": list(CAUTIONS),
     }
-    if scenario.sites is not None:
+    if scenario.has_sites:
         content["sites"] = _site_summary(study)
     if "action" in rasters:
         content["area_by_action"] = summary.area_by_class(rasters["action"], ACTIONS)
