@@ -6,6 +6,7 @@
     const sites = meta.sites.count;
     fm.replace(
       fm.byId("pane-about"),
+      fm.element("h2", { class: "unseen" }, "About"),
       fm.element("section", { class: "part" }, fm.element("h3", {}, "This map"), fm.element("table", { class: "facts wide" }, fm.element("tbody", {}, rows))),
       fm.element("section", { class: "part" },
         fm.element("h3", {}, "Who may have it"),
@@ -14,6 +15,7 @@
         fm.element("p", {}, "It asks the network for nothing. Filters, layer and view stand in the address, so a copied address opens the same view of the same file."),
         sites ? fm.element("div", { class: "row" }, fm.button("Save all reports as a file", fm.saveReports), fm.button("Clear ticks and readings", confirmClear)) : null),
       meta.cautions.length ? fm.element("section", { class: "part" }, fm.element("h3", {}, "To mind"), fm.element("ul", {}, meta.cautions.map((line) => fm.element("li", {}, line)))) : null,
+      fm.element("section", { class: "part" }, fm.button("Print the map as it is shown", fm.printWhole)),
       fm.element("section", { class: "part" },
         fm.element("h3", {}, "Keys"),
         fm.element("p", {}, "Arrow keys move the map and + and − zoom it while it has the focus. Enter in the search field opens the first site. Esc closes a card.")),

@@ -71,8 +71,17 @@
     };
   };
 
+  // A map without a list answers like a list without rows.
+  const NO_SITES = {
+    count: 0, known: new Map(), weight: null, action: new Uint8Array(0),
+    latitude: new Float64Array(0), longitude: new Float64Array(0),
+    id: () => "", name: () => "", district: () => "", haystack: () => "",
+    number: () => () => NaN, text: () => () => "",
+  };
+
   // The first block of sites as functions of a row.
   fm.makeSites = function (block) {
+    if (block === null) return NO_SITES;
     const count = block.facts.count;
     const known = new Map(block.facts.columns.map((facts) => [facts.name, facts]));
     const text = (name) => (known.has(name) && known.get(name).kind === "text" ? fm.textColumn(block, name) : () => "");

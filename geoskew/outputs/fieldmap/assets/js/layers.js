@@ -100,6 +100,8 @@
 
   function pictureKey(record) {
     const nothing = fm.element("span", { class: "key-none" }, fm.element("i", { class: "swatch empty" }), fm.none);
+    // The marks' own key names the actions already.
+    if (record === fm.meta.layers.action && fm.sites.count) return nothing;
     if (record.classes.length) {
       const rows = record.classes.map(([, name, colour]) => {
         const swatch = fm.element("i", { class: "swatch" });

@@ -142,14 +142,16 @@
     const size = fm.map.getSize();
     const copy = fm.element("canvas", { width: size.x * 2, height: size.y * 2 });
     const pen = copy.getContext("2d");
-    pen.scale(2, 2);
     pen.fillStyle = fm.inks().sea;
-    pen.fillRect(0, 0, size.x, size.y);
+    pen.fillRect(0, 0, copy.width, copy.height);
+    pen.scale(2, 2);
     for (const sheet of [ground, lines, marks]) {
       const at = fm.map.layerPointToContainerPoint(sheet._bounds.min);
       const wide = sheet._bounds.getSize();
       pen.drawImage(sheet._container, at.x, at.y, wide.x, wide.y);
     }
+    // A canvas that is drawn while printing begins would be replayed as strokes, at another size.
+    const image = fm.element("img", { alt: "The map as it is on the screen", src: copy.toDataURL() });
     const key = fm.byId("key").cloneNode(false);
     key.removeAttribute("id");
     key.className = "paper-key";
@@ -161,11 +163,17 @@
       fm.byId("paper"),
       fm.element("h2", {}, fm.meta.title),
       fm.element("p", {}, picture ? picture.record.description : ""),
-      copy, key,
+      image, key,
       fm.sites.count ? fm.element("p", {}, `${fm.choice.total} of ${fm.sites.count} sites shown: ${counts}`) : null,
       fm.meta.cautions.length ? fm.element("ul", {}, fm.meta.cautions.map((line) => fm.element("li", {}, line))) : null,
       fm.element("p", { class: "quiet" }, [...fm.meta.provenance.map(([name, value]) => `${name}: ${value}`), fm.meta.thanks.basemap].filter(Boolean).join(" · "))
     );
+  };
+
+  fm.printWhole = async function () {
+    fm.printMap();
+    await document.querySelector("#paper img").decode();
+    window.print();
   };
 
   // A canvas does not take its picture along when it is cloned.
@@ -190,9 +198,9 @@
     }
     const [basemap, sites, visits, contours, coverage, routes] = await Promise.all(["basemap", "sites", "visits", "contours", "coverage", "routes"].map(fm.openBlock));
     const map = makeMap(meta);
-    fm.sites = sites ? fm.makeSites(sites) : { count: 0 };
-    fm.choice = fm.makeChoice({ action: new Uint8Array(0), ...fm.sites }, visits ? fm.makeVisits(visits, fm.sites.count) : null, meta.classes);
-    fm.marks = new fm.Marks({ longitude: [], latitude: [], action: [], weight: null, ...fm.sites }, meta.classes);
+    fm.sites = fm.makeSites(sites);
+    fm.choice = fm.makeChoice(fm.sites, visits ? fm.makeVisits(visits, fm.sites.count) : null, meta.classes);
+    fm.marks = new fm.Marks(fm.sites, meta.classes);
     fm.pictures = fm.makePictures(meta);
     fm.contours = contours && fm.makeContours(contours);
     fm.coverage = coverage && fm.makeContours(coverage);
@@ -214,6 +222,9 @@
     requestAnimationFrame(() => requestAnimationFrame(() => { document.body.dataset.ready = "yes"; }));
   }
 
-  fm.start = start;
-  start();
+  start().catch((problem) => {
+    // Said on the page as well as in the console: a blank map helps nobody.
+    document.body.prepend(fm.element("p", { class: "plain" }, `The map cannot be drawn: ${problem.message}`));
+    throw problem;
+  });
 })(globalThis.FieldMap);

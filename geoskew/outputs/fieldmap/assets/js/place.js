@@ -14,7 +14,7 @@
     chosen = place;
     const pane = fm.byId("pane-place");
     if (place === null) {
-      fm.replace(pane, form(null), fm.element("p", { class: "quiet" }, "Tap the map where there is no site, or type coordinates, to read azimuth, elevation, skew and mismatch there."));
+      fm.replace(pane, title(), form(null), fm.element("p", { class: "quiet" }, "Tap the map where there is no site, or type coordinates, to read azimuth, elevation, skew and mismatch there."));
       return;
     }
     const { longitude, latitude } = place;
@@ -24,6 +24,7 @@
     const single = (words, name, unit) => fm.element("tr", {}, fm.element("th", { scope: "row" }, words), fm.element("td", { class: "number", colspan: 2, data: { value: name } }, fm.withUnit(found[name], unit, 2)));
     fm.replace(
       pane,
+      title(),
       form(place),
       fm.placeSection(latitude, fm.inRange(longitude)),
       fm.element("section", { class: "part" },
@@ -37,6 +38,8 @@
       fm.aimSection([longitude, latitude], [[`${fm.shortened(incoming.name, 24)} (new)`, found.azimuth_after], [`${fm.shortened(outgoing.name, 24)} (old)`, found.azimuth_before]])
     );
   }
+
+  const title = () => fm.element("h2", { class: "unseen" }, "Any place");
 
   function turnLines(turn) {
     const words = fm.turnWords(turn);
