@@ -96,11 +96,17 @@ class Situation(Links):
 
     def weakest(self, moment: Moment) -> NDArray[np.int64]:
         """Number of the carrier with the least margin at a perfect setting (dish on that satellite)."""
-        stand = BEFORE if moment == "before" else REALIGNED
-        responses = self.responses(stand, rain=self.judged_in_rain)
-        margins = np.broadcast_arrays(*(one.margin(one.suits) for one in responses))
-        # Where there is no value any carrier may stand for it: the result has none either.
-        return np.asarray(np.argmin(np.nan_to_num(np.stack(margins), nan=np.inf), axis=0))
+        return self._weakest[moment]
+
+    @cached_property
+    def _weakest(self) -> dict[Moment, NDArray[np.int64]]:
+        found: dict[Moment, NDArray[np.int64]] = {}
+        for stand in (BEFORE, REALIGNED):
+            responses = self.responses(stand, rain=self.judged_in_rain)
+            margins = np.broadcast_arrays(*(one.margin(one.suits) for one in responses))
+            # Where there is no value any carrier may stand for it: the result has none either.
+            found[stand.moment] = np.argmin(np.nan_to_num(np.stack(margins), nan=np.inf), axis=0)
+        return found
 
     def of_weakest(self, moment: Moment, values: list[Array]) -> Array:
         """Of one array a carrier, the value of the weakest carrier at each place."""

@@ -85,11 +85,13 @@ def _by_setting(
     theirs = view.satellite.polarisation
     middle, swing = 0.5 * over * (1.0 + leak), 0.5 * over * (1.0 - leak)
     zero = np.zeros(())
-    feed_linear = is_linear(situation.scenario.carriers_before[number])
+    old = situation.scenario.carriers_before[number]
+    feed_linear = is_linear(old)
     if feed_linear != (theirs not in _HANDS):
         return Neighbours(middle, zero, zero)
     if not feed_linear:
-        same = theirs == carrier.polarisation
+        # A linear carrier in a circular feed stays on the port of the old one.
+        same = theirs == (old if is_linear(carrier) else carrier).polarisation
         return Neighbours(over if same else over * leak, zero, zero)
     # The setting at which the neighbour would be received in full on the wanted carrier's port.
     port = old_port(situation.scenario.carriers_before)
