@@ -522,3 +522,16 @@ def test_nothing_half_written_stays(tmp_path: Path) -> None:
     with pytest.raises(OutputError, match="does not exist"):
         write_cards(tmp_path / "missing" / "cards.html", None, table(row()), FACTS)
     assert list(tmp_path.iterdir()) == []
+
+
+def test_stop_inside_the_window_ends_the_turn(tmp_path: Path) -> None:
+    # By hand: from 30.86 the target 20.36 lies behind a stop at 22.0; the window reaches from 17.11 to 23.61,
+    # so the feed goes to its stop: 8.86 counter-clockwise, 1.64 short.
+    stopped = card(tmp_path, row(feed_low_deg=22.0, feed_high_deg=75.0))
+    assert stopped.fields["turn_to_make"] == pytest.approx([-8.86])
+    assert stopped.fields["target_to_reach"] == pytest.approx([22.0])
+    assert stopped.fields["short_of_target"] == pytest.approx([1.64])
+    assert "WRONG WAY, after the changeover" not in stopped.text
+    # A stop at 25 lies outside of the window, and no other way is open.
+    barred = plan_turning(30.86, -10.5, Feed(25.0, 75.0), slack=(-13.75, -7.25))
+    assert barred.way is None

@@ -24,6 +24,7 @@ _TOP: Final = 11.0
 _WIDTH: Final = 210.0 - 2 * _LEFT
 _DIAL: Final = 62.0
 _SMALLEST_DIAL: Final = 34.0
+_FIGURE: Final = 36.0
 # Longest text of one given cell on paper; the HTML cards show all of it.
 _LONGEST: Final = 110
 
@@ -209,17 +210,22 @@ def _signals(page: Page, card: Card, facts: CardFacts) -> None:
         return
     share = facts.availability_percent
     rain = "margin in rain" if share is None else f"margin in rain {share:g} %"
-    heads = ("", "margin, clear sky", "meter, Es/N0", rain if any(row.rain for row in card.signals) else "")
-    widths = (_WIDTH - 95.0, 30.0, 28.0, 37.0)
-    lines: list[tuple[tuple[str, ...], bool]] = [(heads, False)]
-    lines += [
-        ((row.label, plain(row.margin), plain(row.meter), plain(row.rain)), row.bad) for row in card.signals
+    columns = [
+        ("margin, clear sky", [row.margin for row in card.signals]),
+        ("meter, Es/N0", [row.meter for row in card.signals]),
+        (rain, [row.rain for row in card.signals]),
     ]
+    columns = [(head, cells) for head, cells in columns if any(cells)]
+    widths = [_WIDTH - _FIGURE * len(columns), *[_FIGURE] * len(columns)]
+    lines = [(["", *(head for head, _ in columns)], False)]
+    for k, row in enumerate(card.signals):
+        label = f"\N{BALLOT X} {row.label}" if row.bad else row.label
+        lines.append(([label, *(plain(cells[k]) for _, cells in columns)], row.bad))
     for index, (cells, bad) in enumerate(lines):
         page.set_font("body", "B" if bad or index == 0 else "", 8.2)
         page.set_x(_LEFT)
         for width, cell in zip(widths, cells, strict=True):
-            page.cell(width, 4.1, ("\N{BALLOT X} " if bad and cell == cells[0] else "") + cell, border="B")
+            page.cell(width, 4.1, cell, border="B")
         page.ln(4.1)
 
 

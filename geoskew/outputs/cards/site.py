@@ -112,7 +112,7 @@ def dials_of(job: Job) -> tuple[Dial, ...]:
     if way is None:
         return ()
     tolerance = None
-    if job.window is not None and job.turning.is_direct:
+    if job.window is not None and job.turning.keeps_side:
         tolerance = (way.present + job.window[0], way.present + job.window[1])
     stops = (job.feed.low, job.feed.high)
     return tuple(
@@ -203,4 +203,12 @@ def code_text(job: Job, site: str) -> str:
 
 def signal_rows(job: Job, facts: CardFacts) -> tuple[tuple[Signal, ...], tuple[Line, ...]]:
     """The signal figures to expect, and the remarks beneath them."""
-    return signals(job.row, job.action, facts, turn=job.wanted, direct=job.turning.is_direct)
+    rows, notes = signals(job.row, job.action, facts, turn=job.wanted, direct=job.turning.is_direct)
+    way = job.turning.way
+    if way is not None and way.short > 0.0:
+        aside = degrees("short_of_target", way.short)
+        notes = (
+            ("The figures after your turn are for the full target, ", aside, " beyond the stop."),
+            *notes,
+        )
+    return rows, notes

@@ -58,7 +58,7 @@ def steps(job: Job, facts: CardFacts) -> tuple[Line, ...]:
         return ((why, " Do not force it. Leave everything as it is and report to the planner."),)
     lines: list[Line] = [_before_touching(job), _when(job, facts)]
     if job.turning.obstacle:
-        lines.append((f"{job.turning.obstacle} Take this way instead:",))
+        lines.append((f"{job.turning.obstacle} Do this:",))
     lines += _turn(job, way)
     lines += _check(job, way)
     if job.action == "re-aim" or (job.action == "turn-at-changeover" and not facts.same_slot):
@@ -95,7 +95,8 @@ def _turn(job: Job, way: Way) -> list[Line]:
     if way.swap:
         lines.append(("Exchange the two leads: what was on the V port goes to the H port, and back.",))
     if abs(way.turn) < 0.05:
-        lines.append(("The feed is not turned: it already stands at the target.",))
+        where = "at the target" if way.short == 0.0 else "at its stop, near enough to the target"
+        lines.append((f"The feed is not turned: it already stands {where}.",))
         return lines
     field = job.turn_field if job.turning.is_direct else "turn_to_make"
     lines.append(
@@ -145,7 +146,7 @@ def _check(job: Job, way: Way) -> list[Line]:
     if job.scale.is_known:
         reading = degrees("scale_target", job.scale.reading(way.target), signed=True)
         lines.append(("The scale then shows ", reading, "."))
-    if job.window is not None and job.turning.is_direct:
+    if job.window is not None and job.turning.keeps_side:
         lines.append(_tolerance(job, way))
     return lines
 
@@ -159,10 +160,11 @@ def _tolerance(job: Job, way: Way) -> Line:
     else:
         from_to = ("Any turn from ", degrees("window_low", low, signed=True), " to ")
         parts += [*from_to, degrees("window_high", high, signed=True)]
-        parts.append(" keeps what is asked (plus is CLOCKWISE from BEHIND); aim for the target.")
+        aim = "aim for the target" if way.short == 0.0 else "the stop is as near to the target as it gets"
+        parts.append(f" keeps what is asked (plus is CLOCKWISE from BEHIND); {aim}.")
     before, after = "margin_marked_before", "margin_marked_after"
-    if job.row.has(before) and job.row.has(after):
-        mark = job.scale.nearest_mark(way.target)
+    mark = job.scale.nearest_mark(way.target)
+    if job.row.has(before) and job.row.has(after) and way.short == 0.0 and job.feed.reaches(mark):
         shown = job.scale.reading(mark) if job.scale.is_known else fold(mark)
         what = "scale " if job.scale.is_known else "a setting of "
         parts += [f" On the nearest whole mark ({what}", degrees("nearest_mark", shown, signed=True), ") "]

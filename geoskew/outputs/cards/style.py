@@ -90,7 +90,8 @@ article>.dials{flex:1 1 0;min-height:30mm;grid-template-rows:minmax(0,1fr) auto}
 figure{display:flex;flex-direction:column;min-height:0}
 figure svg{flex:1 1 0;min-height:0;max-width:none}
 .front{break-after:page}
-.front ol{max-height:none}
+.front ol{max-height:none;columns:2;column-gap:1.6rem}
+.front li{break-inside:avoid;padding:0}
 .front a{min-height:0;line-height:1.3}
 .facts{grid-template-columns:1fr 1fr}
 .dials{grid-template-columns:1fr 1fr;margin:0}

@@ -35,11 +35,15 @@ class Feed:
 
 @dataclass(frozen=True, slots=True)
 class Way:
-    """One way to the target: the turn the crew makes, degrees, and whether leads change ports."""
+    """One way to the target: the turn the crew makes, degrees, and whether leads change ports.
+
+    ``short``: how far from the target a stop ends the turn, degrees.
+    """
 
     present: float
     turn: float
     swap: bool = False
+    short: float = 0.0
 
     @property
     def target(self) -> float:
@@ -63,6 +67,11 @@ class Turning:
         """Whether the way's turn is the one of the assessed table."""
         return self.way is not None and not self.obstacle
 
+    @property
+    def keeps_side(self) -> bool:
+        """Whether the feed is turned straight to the target, or to the stop before it."""
+        return self.is_direct or (self.way is not None and self.way.short > 0.0)
+
 
 def plan_turning(present: float, turn: float, feed: Feed, *, slack: tuple[float, float]) -> Turning:
     """Choose the way to ``present + turn``.
@@ -74,8 +83,9 @@ def plan_turning(present: float, turn: float, feed: Feed, *, slack: tuple[float,
     feed : Feed
         Its stops and ports.
     slack : tuple of float
-        The turns from the present setting that still do (the window), degrees; a feed that cannot be
-        turned may stay where an exchange of ports alone lands inside.
+        The turns from the present setting that still do (the window), degrees: a turn that a stop ends
+        inside is good enough, and a feed that cannot be turned may stay where an exchange of ports alone
+        lands inside.
 
     Returns
     -------
@@ -93,11 +103,26 @@ def plan_turning(present: float, turn: float, feed: Feed, *, slack: tuple[float,
         best = open_swaps[0] if open_swaps else None
         saves = best is not None and abs(best.turn) <= abs(turn) - _WORTH_SAYING
         return Turning(direct, best if saves else None)
+    to_stop = _to_the_stop(start, turn, feed, slack)
+    if to_stop is not None:
+        return Turning(
+            to_stop, obstacle="The feed's stop ends the turn short of the target, within what does."
+        )
     others = open_swaps + [way for way in around if feed.reaches(way.target)]
     beyond = "The direct turn would run into the feed's stop."
     if not others:
         return Turning(None, obstacle="The feed's stops do not let it reach the target.")
     return Turning(min(others, key=lambda way: (abs(way.turn), way.swap)), obstacle=beyond)
+
+
+def _to_the_stop(present: float, turn: float, feed: Feed, slack: tuple[float, float]) -> Way | None:
+    """The direct turn as far as the stop, where that is inside the window."""
+    target = present + turn
+    stop = feed.low if target < feed.low else feed.high
+    low, high = slack
+    if not (math.isfinite(stop) and low <= stop - present <= high) or not feed.reaches(present):
+        return None
+    return Way(present, stop - present, short=abs(target - stop))
 
 
 def _within_stops(present: float, feed: Feed) -> float:
