@@ -27,6 +27,7 @@ from geoskew.resources import outline
 from geoskew.situation.ports import is_linear, port_offset
 from geoskew.study.facts import CAUTIONS
 from geoskew.study.plan import judged_suffix
+from geoskew.study.reasons import scenario_notes
 
 if TYPE_CHECKING:
     from geoskew.study.core import Study
@@ -119,6 +120,8 @@ def provenance(study: Study) -> dict[str, str]:
         "Satellite after": f"{scenario.incoming.name}, {scenario.incoming.longitude_deg:g}° east",
         "Decision": study.judged,
     }
+    if notes := scenario_notes(scenario):
+        lines["Assumed"] = "; ".join(notes)
     if scenario.changeover is not None:
         lines["Changeover"] = scenario.changeover.strftime("%Y-%m-%d %H:%M UTC")
     if scenario.weather is not None:

@@ -36,6 +36,7 @@ GIVEN: Final[dict[str, tuple[str, str]]] = {
     "district": ("", "district of the site"),
     "access": ("", "what to know of the way there"),
     "last_visit": ("", "date of the last visit"),
+    "action_reason": ("", "why this action, and the port to take where that changes"),
     "weakest_before": (
         "",
         "carrier with the least margin before the changeover, feed and dish perfectly set",

@@ -20,6 +20,7 @@ from geoskew.study.mapcontent import background, contour_names, map_content, ove
 from geoskew.study.outfiles import folder_of_results, require_free
 from geoskew.study.plan import Planned, can_plan, judged_suffix, plan_of
 from geoskew.study.rasters import contoured, write_study_rasters
+from geoskew.study.reasons import scenario_notes
 
 Report = Callable[[str, float, float], None]
 
@@ -79,7 +80,7 @@ def run(study: Study, folder: Path, settings: Settings, report: Report) -> Writt
     study.read()
     background(settings.tiles)
     require_free(study, final_names(study, folder), overwrite=settings.overwrite)
-    written = Written()
+    written = Written(remarks=scenario_notes(study.scenario))
     with folder_of_results(folder):
         rasters = _rasters(study, folder, settings, written, report)
         planned = _sites_and_plan(study, folder, written, report)

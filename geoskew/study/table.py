@@ -17,6 +17,7 @@ from geoskew.scenario import Scenario
 from geoskew.sites import SiteList
 from geoskew.situation import Inputs, Situation
 from geoskew.study.meanings import GIVEN
+from geoskew.study.reasons import action_reasons
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -81,6 +82,11 @@ def _values(
             values[name] = np.array([words.get(int(code)) for code in array], dtype=object)
         else:
             values[name] = np.where(array == NO_CLASS, np.nan, array) if record.is_class else array
+    ports = places.columns.get("ports")
+    default = scenario.terminal.ports
+    values["action_reason"] = action_reasons(
+        scenario, values["action"], default if ports is None else np.where(np.isnan(ports), default, ports)
+    )
     if len(scenario.carriers_before) > 1:
         situation = Situation(scenario, places, inputs)
         for moment in ("before", "after"):

@@ -1,0 +1,62 @@
+"""Why a site's action is what it is, and what a reader must know of the whole scenario."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Any, Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from geoskew.situation.ports import is_linear, old_port
+
+if TYPE_CHECKING:
+    from geoskew.scenario import Scenario
+
+REASONS: Final = {
+    "leave": "untouched, the feed keeps the reserve after the changeover",
+    "preset": "one setting, made ahead of time, keeps what both moments are held to",
+    "turn-at-changeover": "no setting keeps what both moments are held to",
+    "re-aim": "even with the feed set for it, the new satellite is too far from the dish's old aim",
+    "upgrade": "even perfectly set for the new satellite the reserve is not kept",
+    "no-sight": "the new satellite stands below the lowest usable elevation",
+}
+
+
+def action_reasons(scenario: Scenario, actions: NDArray[Any], ports: Any) -> NDArray[Any]:
+    """A line a site: the reason of its action, and the port to take where that changes."""
+    ports = np.broadcast_to(np.asarray(ports), actions.shape)
+    remarks = {count: port_remark(scenario, count) for count in {int(one) for one in np.unique(ports)}}
+    reasons = np.empty(actions.shape, dtype=object)
+    for index, name in enumerate(actions):
+        remark = "" if name == "no-sight" else remarks[int(ports[index])]
+        reasons[index] = REASONS[name] + remark
+    return reasons
+
+
+def port_remark(scenario: Scenario, ports: int) -> str:
+    """What to say of ports where the new carriers' polarisation is not the old one's; empty: nothing."""
+    remarks = []
+    single = old_port(scenario.carriers_before)
+    for old, new in zip(scenario.carriers_before, scenario.carriers_after, strict=True):
+        if is_linear(old) and is_linear(new):
+            if single is None or (new.polarisation == old.polarisation and new.polarisation == single):
+                continue
+            if ports == 2 or new.polarisation == single:
+                if new.polarisation != old.polarisation:
+                    remarks.append(f"{new.name}: take the {new.polarisation} port, no turn for it")
+            else:
+                remarks.append(f"{new.name}: the {single} port takes {new.polarisation}, a quarter turn")
+        elif is_linear(old) != is_linear(new):
+            remarks.append(f"{new.name}: linear against circular, 3.01 dB at any setting")
+        elif old.polarisation != new.polarisation:
+            remarks.append(f"{new.name}: take the other port")
+    return "".join(f"; {remark}" for remark in remarks)
+
+
+def scenario_notes(scenario: Scenario) -> list[str]:
+    """Assumptions that every output of a scenario must state."""
+    notes = []
+    before = scenario.carriers_before
+    if any(is_linear(one) for one in before) and old_port(before) is None and scenario.terminal.ports == 1:
+        notes.append("carriers of both polarisations on one port: a switched port is assumed")
+    return notes
