@@ -58,16 +58,15 @@
     const kind = fm.marks.kind(i);
     const id = fm.sites.id(i);
     const about = [fm.sites.name(i) ? id : "", fm.sites.district(i)].filter(Boolean).map((text) => fm.shortened(text, 80)).join(" · ");
-    return fm.element(
-      "div", { class: "card-head" },
-      fm.element("div", { class: "row" },
+    return [
+      fm.element("div", { class: "row card-bar" },
         fm.button("← Sites", () => fm.close(), { id: "back" }),
         fm.button("On map", () => fm.centreOn(i)),
         fm.button("Print", () => fm.printCard(i), { id: "print-card" })),
       fm.element("h2", {}, fm.shapeElement(kind, 24), fm.element("span", {}, fm.shortened(fm.siteTitle(i), 160))),
       about ? fm.element("p", { class: "quiet" }, about) : null,
-      visits(i)
-    );
+      visits(i),
+    ];
   }
 
   function visits(i) {

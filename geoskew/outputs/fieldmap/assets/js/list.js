@@ -35,7 +35,7 @@
     fm.replace(
       roll,
       fm.element("div", { id: "counts", role: "group", "aria-label": "Actions: tap to hide or show" }, meta.classes.map(actionSwitch), actionSwitch(fm.noAction)),
-      fm.element("div", { class: "finders" }, fm.element("label", { class: "grow" }, fm.element("span", {}, "Find"), field), picks),
+      fm.element("div", { class: "finders" }, fm.element("label", { class: "grow find" }, fm.element("span", {}, "Find"), field), picks),
       summary,
       fm.element("table", { id: "sites" }, fm.element("caption", { class: "unseen" }, "Sites that are shown"), heading(), body),
       more

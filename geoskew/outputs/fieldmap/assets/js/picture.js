@@ -14,6 +14,15 @@
     return from.map((value, channel) => Math.round(value + share * (to[channel] - value)));
   };
 
+  // First cell and number of cells between two edges of the sheet, and where they are drawn.
+  function span(start, end, cells, scale, origin, least, most) {
+    const cell = ((end - start) * scale) / cells;
+    const from = start * scale - origin;
+    const first = Math.max(0, Math.floor((least - from) / cell));
+    const last = Math.min(cells, Math.ceil((most - from) / cell));
+    return { first, count: last - first, at: from + first * cell, length: (last - first) * cell };
+  }
+
   class Picture {
     constructor(facts, layer) {
       Object.assign(this, facts);
@@ -92,15 +101,15 @@
     draw(pen, view, opacity) {
       this.paint();
       if (this.canvas === null) return;
-      const x = this.left * view.scale - view.left;
-      const y = this.top * view.scale - view.top;
-      const width = (this.right - this.left) * view.scale;
-      const height = (this.bottom - this.top) * view.scale;
+      // Only the cells in view: scaling the whole picture would cost time and exactness.
+      const across = span(this.left, this.right, this.columns, view.scale, view.left, view.min.x, view.max.x);
+      const down = span(this.top, this.bottom, this.rows, view.scale, view.top, view.min.y, view.max.y);
+      if (across.count <= 0 || down.count <= 0) return;
       pen.save();
       // Cells are facts: no blur between them.
       pen.imageSmoothingEnabled = false;
       pen.globalAlpha = opacity;
-      pen.drawImage(this.canvas, x, y, width, height);
+      pen.drawImage(this.canvas, across.first, down.first, across.count, down.count, across.at, down.at, across.length, down.length);
       pen.restore();
     }
   }
