@@ -122,8 +122,9 @@ def _stops(dial: Dial) -> Iterator[Mark]:
     if not (math.isfinite(low) and math.isfinite(high)) or high - low >= 360.0:
         return
     yield Stroke(dial.band(high, low + 360.0, 72.0, 93.0), "stop", filled=True)
-    x, y = dial.at((high + low + 360.0) / 2.0, 82.0)
-    yield Label(x, y, "behind the stops", "stop", 9.0)
+    x, y = dial.at((high + low + 360.0) / 2.0, 52.0)
+    yield Label(x, y - 5.0, "behind", "stop", 9.0)
+    yield Label(x, y + 5.0, "the stops", "stop", 9.0)
 
 
 def _wrong_side(dial: Dial) -> Iterator[Mark]:
