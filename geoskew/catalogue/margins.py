@@ -34,32 +34,48 @@ def margin_shared_before(situation: Situation) -> Array:
     return situation.margin(BEFORE, situation.policy_shared, rain=False)
 
 
-@layer(**_TWO, description="Margin after the changeover at the shared setting, dish on the old slot, clear sky")
+@layer(
+    **_TWO, description="Margin after the changeover at the shared setting, dish on the old slot, clear sky"
+)
 def margin_shared_after(situation: Situation) -> Array:
     return situation.margin(UNTOUCHED, situation.policy_shared, rain=False)
 
 
-@layer(**_NEW, description="Margin after the changeover with dish and feed set for the new satellite, clear sky")
+@layer(
+    **_NEW, description="Margin after the changeover with dish and feed set for the new satellite, clear sky"
+)
 def margin_realigned(situation: Situation) -> Array:
     return situation.margin(REALIGNED, situation.setting_realigned, rain=False)
 
 
-@layer(**_TWO, description="Margin after the changeover when the shared turn was made the wrong way, clear sky")
+@layer(
+    **_TWO, description="Margin after the changeover when the shared turn was made the wrong way, clear sky"
+)
 def margin_reversed(situation: Situation) -> Array:
     return situation.margin(UNTOUCHED, situation.policy_reversed, rain=False)
 
 
-@layer(**_OLD, **_RAIN, description="Margin before the changeover, present setting, at the stated availability")
+@layer(
+    **_OLD, **_RAIN, description="Margin before the changeover, present setting, at the stated availability"
+)
 def margin_before_rain(situation: Situation) -> Array:
     return situation.margin(BEFORE, situation.present, rain=True)
 
 
-@layer(**_TWO, **_RAIN, description="Margin after the changeover when nothing is touched, at the stated availability")
+@layer(
+    **_TWO,
+    **_RAIN,
+    description="Margin after the changeover when nothing is touched, at the stated availability",
+)
 def margin_untouched_rain(situation: Situation) -> Array:
     return situation.margin(UNTOUCHED, situation.present, rain=True)
 
 
-@layer(**_TWO, **_RAIN, description="Margin before the changeover at the shared setting, at the stated availability")
+@layer(
+    **_TWO,
+    **_RAIN,
+    description="Margin before the changeover at the shared setting, at the stated availability",
+)
 def margin_shared_before_rain(situation: Situation) -> Array:
     return situation.margin(BEFORE, situation.policy_shared, rain=True)
 
@@ -120,3 +136,16 @@ def margin_marked_before(situation: Situation) -> Array:
 )
 def margin_marked_after(situation: Situation) -> Array:
     return situation.deciding_margin(UNTOUCHED, _marked(situation))
+
+
+_WRONG = "Margin after the changeover with the dish on the new slot when the realigning turn was made the wrong way"
+
+
+@layer(**_TWO, where="sites", description=f"{_WRONG}, clear sky")
+def margin_wrong_way(situation: Situation) -> Array:
+    return situation.margin(REALIGNED, situation.policy_wrong_way, rain=False)
+
+
+@layer(**_TWO, **_RAIN, where="sites", description=f"{_WRONG}, at the stated availability")
+def margin_wrong_way_rain(situation: Situation) -> Array:
+    return situation.margin(REALIGNED, situation.policy_wrong_way, rain=True)

@@ -81,6 +81,13 @@ class Situation(Links):
         return fold(self.present - self.shared.turn) if self.turning_helps else self.present
 
     @cached_property
+    def policy_wrong_way(self) -> Array:
+        """The setting that the realigning turn, made the wrong way, leaves."""
+        if not self.turning_helps:
+            return self.present
+        return fold(2.0 * self.present - self.setting_realigned)
+
+    @cached_property
     def action(self) -> NDArray[np.uint8]:
         """Action by code, at every place."""
         return decision.action(

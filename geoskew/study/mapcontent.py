@@ -202,17 +202,17 @@ def _isolines(name: str, path: Path) -> list[ContourLine]:
 
 
 def _routes(planned: Planned) -> list[Route]:
-    """Each crew's day, from the base through its sites and back."""
+    """Each crew's day, from where it starts through its sites to where it spends the night."""
     routes = []
     for day in planned.plan.days.itertuples(index=False):
         stops = planned.plan.visits
         stops = stops[(stops["crew"] == day.crew) & (stops["day"] == day.day)].sort_values("order")
-        if stops.empty:
-            continue
-        base = [[day.base_lon, day.base_lat]]
-        track = np.asarray(
-            base + stops[["lon", "lat"]].to_numpy(dtype=float).tolist() + base, dtype=np.float64
-        )
+        points = [
+            (day.start_lon, day.start_lat),
+            *stops[["lon", "lat"]].itertuples(index=False, name=None),
+            (day.end_lon, day.end_lat),
+        ]
+        track = np.asarray(points, dtype=np.float64)
         track[:, 0] = np.unwrap(track[:, 0], period=360.0)
         routes.append(Route(str(day.crew), str(day.day), track, tuple(stops["id"].astype(str))))
     return routes
