@@ -155,7 +155,7 @@ class Response:
         positive where these alone spoil the level. NaN where the carrier has no value.
         """
         d, wanted, crossed = self.at(setting)
-        allowed = ratio(-(np.asarray(level_db, dtype=np.float64) + self.required_db)) - self.uplink
+        allowed = self.allowed(level_db) - self.uplink
         return np.asarray((allowed * wanted - self.crossed * crossed) / (self.noise + self._neighbours(d)))
 
     def best_bound(self) -> Array:
@@ -166,14 +166,21 @@ class Response:
         least = least - np.hypot(self.neighbour_cosine, self.neighbour_sine)
         return np.asarray(-10.0 * np.log10(self.uplink + least / (middle + swing * top)) - self.required_db)
 
+    def allowed(self, level_db: ArrayLike) -> Array:
+        """(N+I)/C at which the margin is `level_db`."""
+        return ratio(-(np.asarray(level_db, dtype=np.float64) + self.required_db))
+
     def arc(self, level_db: ArrayLike) -> tuple[Array, Array]:
-        """Settings that keep at least a margin of `level_db`: middle of the arc and its half-width, degrees.
+        """Settings that keep at least a margin of `level_db`, dB, as `arc_within` gives them."""
+        return self.arc_within(self.allowed(level_db))
+
+    def arc_within(self, total: Array) -> tuple[Array, Array]:
+        """Settings that keep (N+I)/C at or below `total`: middle of the arc and its half-width, degrees.
 
         The half-width is 90 or more where every setting is good and negative where none is; NaN
         where there is no carrier. Closed form: A + B·cos θ + C·sin θ ≤ 0.
         """
-        level = np.asarray(level_db, dtype=np.float64)
-        allowed = ratio(-(level + self.required_db)) - self.uplink
+        allowed = total - self.uplink
         if self.fixed is not None:
             inverse_downlink = self.inverse_ratio(0.0) - self.uplink
             width = np.where(inverse_downlink <= allowed, WHOLE_CIRCLE, EMPTY_ARC)
@@ -202,23 +209,23 @@ def _half_width(constant: Array, size: Array, phase: Array) -> Array:
     180° nothing is left of the wanted carrier.
     """
     with np.errstate(divide="ignore", invalid="ignore"):
-        quotient = np.where(size > 0.0, constant / size, np.sign(constant) * np.inf)
-    angle = np.arccos(np.clip(quotient, -1.0, 1.0))
-    half = np.rad2deg(0.5 * (angle - phase))
-    half = np.where((quotient > 1.0) | (half < 0.0), EMPTY_ARC, half)
-    half = np.where((quotient <= -1.0) & (phase == 0.0), WHOLE_CIRCLE, half)
-    return np.where(np.isnan(constant) | np.isnan(size), np.nan, half)
+        quotient = np.where(size <= 0.0, np.sign(constant) * np.inf, constant / size)
+    half = np.rad2deg(0.5 * np.arccos(np.clip(quotient, -1.0, 1.0)))
+    if not _is_zero(phase):
+        half = half - np.rad2deg(0.5 * phase)
+        return np.where((quotient > 1.0) | (half < 0.0), EMPTY_ARC, half)
+    return np.where(quotient > 1.0, EMPTY_ARC, half)
 
 
-def merged_arcs(responses: Sequence[Response], levels_db: Sequence[ArrayLike]) -> list[tuple[Array, Array]]:
-    """Arcs of settings that keep a level, one a response; those about one and the same middle as one.
+def merged_arcs(responses: Sequence[Response], totals: Sequence[Array]) -> list[tuple[Array, Array]]:
+    """Arcs of settings within totals of (N+I)/C, one a response; those about one and the same middle as one.
 
     Carriers of one moment mostly suit at the same setting: of arcs about one middle the narrowest is
     what they have in common.
     """
     merged: dict[int, tuple[Array, Array]] = {}
-    for number, (response, level) in enumerate(zip(responses, levels_db, strict=True)):
-        middle, half = response.arc(level)
+    for number, (response, total) in enumerate(zip(responses, totals, strict=True)):
+        middle, half = response.arc_within(total)
         # An arc's middle is the array `suits` itself unless a neighbour moves it.
         key = id(middle) if middle is response.suits else -1 - number
         merged[key] = (middle, np.minimum(merged[key][1], half)) if key in merged else (middle, half)

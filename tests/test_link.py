@@ -215,7 +215,7 @@ def test_arcs_about_one_middle_are_one():
     strong = Response(suits=suits, noise=np.array([0.02, 0.1]), required_db=5.0, **terms)
     weak = Response(suits=suits, noise=np.array([0.05, 0.05]), required_db=5.0, **terms)
     other = Response(suits=suits + 90.0, noise=np.array([0.05, 0.05]), required_db=5.0, **terms)
-    arcs = link.merged_arcs([strong, weak, other], [1.0, 1.0, 1.0])
+    arcs = link.merged_arcs([strong, weak, other], [strong.allowed(1.0)] * 3)
     assert len(arcs) == 2
     np.testing.assert_array_equal(arcs[0][1], np.minimum(strong.arc(1.0)[1], weak.arc(1.0)[1]))
     np.testing.assert_array_equal(arcs[1][1], other.arc(1.0)[1])

@@ -106,7 +106,7 @@ def _chance_by_spread(
     """The share (0..1) that fails as a function of the spread of settings."""
     if moment.eirp_spread_db > 0.0:
         return lambda spread: failing_with_eirp(moment, intended, spread, level_db)
-    arcs = merged_arcs(moment.responses, [level_db] * len(moment.responses))
+    arcs = merged_arcs(moment.responses, [one.allowed(level_db) for one in moment.responses])
     return lambda spread: _failing(arcs, intended, spread)
 
 

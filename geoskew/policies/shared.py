@@ -1,45 +1,21 @@
-"""The setting that serves both satellites, and its window.
-
-A curve is a `Response` of one carrier at one moment, and a level that this moment is held to. Its
-excess is its margin less that level. The shared setting maximises the least excess of all curves.
-"""
+"""The shared setting and its window, out of the arcs at the level that the search found."""
 
 from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Final, NamedTuple
+from typing import Final
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from geoskew.angles import fold
-from geoskew.link import WHOLE_CIRCLE, Array, Response, merged_arcs
-
-# The excess is found to this: some 1e-6° of a curve's flank. At a smooth peak the middle of what is left is
-# taken.
-EXCESS_TOLERANCE_DB: Final = 1e-8
-# Enough to halve 200 dB down to the tolerance.
-MOST_STEPS: Final = 40
+from geoskew.link import WHOLE_CIRCLE, Array
+from geoskew.policies.curves import Curve, arcs, in_all, least_excess
+from geoskew.policies.search import BACK_OFF_DB, EXCESS_TOLERANCE_DB, LOWEST_EXCESS_DB, greatest_excess
 
 # Two settings whose turns differ by less than this are the same turn to either side.
 TIE_DEG: Final = 1e-6
-
-# Below the level found the arcs overlap by more than rounding: 1e-9 dB is some 1e-9° of a curve's flank.
-BACK_OFF_DB: Final = 1e-9
-
-# The end of one arc counts as within another that ends there as well, whatever rounding says.
-ARC_ROUNDING_DEG: Final = 1e-9
-
-# The least excess worth telling apart; it bounds the search from below, not the results.
-LOWEST_EXCESS_DB: Final = -200.0
-
-
-class Curve(NamedTuple):
-    """One carrier at one moment and the margin (dB, broadcastable) that the moment is held to."""
-
-    response: Response
-    held_to: Array
 
 
 @dataclass(frozen=True)
@@ -56,91 +32,13 @@ class Shared:
     high: Array
 
 
-def held_to(best: ArrayLike, *, reserve_db: float, allowed_loss_db: float) -> Array:
-    """What a moment is held to, dB: the reserve; where the best misses it, the best less what is allowed."""
-    best = np.asarray(best, dtype=np.float64)
-    return np.where(best < reserve_db, best - allowed_loss_db, np.where(np.isnan(best), np.nan, reserve_db))
-
-
-def least_excess(curves: Sequence[Curve], setting: ArrayLike) -> Array:
-    """The least excess of all curves at settings in degrees, dB."""
-    excess = [curve.response.margin(setting) - curve.held_to for curve in curves]
-    return np.asarray(np.minimum.reduce(np.broadcast_arrays(*excess)))
-
-
-def _arcs(curves: Sequence[Curve], level: Array) -> tuple[list[Array], list[Array]]:
-    arcs = merged_arcs([curve.response for curve in curves], [level + curve.held_to for curve in curves])
-    return [middle for middle, _ in arcs], [half for _, half in arcs]
-
-
-def _in_all(
-    setting: Array, middles: Sequence[Array], halves: Sequence[Array], skip: int
-) -> NDArray[np.bool_]:
-    """Whether a setting is in every arc but number `skip` (where it is an end, rounding must not decide)."""
-    good = np.ones(np.shape(setting), dtype=bool)
-    for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
-        if number != skip:
-            good = good & (np.abs(fold(setting - middle)) <= half + ARC_ROUNDING_DEG)
-    return good
-
-
-def _overlap(middles: Sequence[Array], halves: Sequence[Array]) -> Array:
-    """How far the arcs overlap: negative where they have no setting in common.
-
-    Of two arcs in degrees, so that a search can follow it; of more, only +1 or −1.
-    """
-    if len(middles) == 1:
-        return halves[0]
-    if len(middles) == 2:
-        gap = np.abs(fold(middles[0] - middles[1]))
-        both = (halves[0] >= 0.0) & (halves[1] >= 0.0)
-        return np.where(both, halves[0] + halves[1] - gap, -1.0)
-    none_empty = np.logical_and.reduce([half >= 0.0 for half in halves])
-    found = np.logical_and.reduce([half >= WHOLE_CIRCLE for half in halves])
-    # If the arcs have anything in common, the lower end of one of them is in all the others.
-    for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
-        found = found | ((half < WHOLE_CIRCLE) & _in_all(middle - half, middles, halves, number))
-    return np.where(none_empty & found, 1.0, -1.0)
-
-
-def _search(curves: Sequence[Curve], shape: tuple[int, ...]) -> Array:
-    """The greatest level of excess at which all arcs still meet, to the tolerance and from below.
-
-    Regula falsi after Illinois on the overlap of the arcs, every third step a bisection, for all
-    places at once.
-    """
-    bound = [curve.response.best_bound() - curve.held_to for curve in curves]
-    high = np.broadcast_to(np.minimum.reduce(np.broadcast_arrays(*bound)), shape) + BACK_OFF_DB
-    starts = {id(curve.response.suits): curve.response.suits for curve in curves}
-    reached = [np.broadcast_to(least_excess(curves, suits), shape) for suits in starts.values()]
-    # The best of the curves' own settings is reached; a hair below it rounding cannot unmake it.
-    low = np.maximum(np.maximum.reduce(reached), LOWEST_EXCESS_DB) - BACK_OFF_DB
-    value_low = np.maximum(_overlap(*_arcs(curves, low)), 0.0)
-    value_high = np.minimum(_overlap(*_arcs(curves, high)), -1e-12)
-    for step in range(MOST_STEPS):
-        if not np.any(high - low > EXCESS_TOLERANCE_DB):
-            break
-        middle = 0.5 * (low + high)
-        if step % 3 != 2:
-            with np.errstate(invalid="ignore", divide="ignore"):
-                falsi = low + (high - low) * value_low / (value_low - value_high)
-            middle = np.where((falsi > low) & (falsi < high), falsi, middle)
-        value = _overlap(*_arcs(curves, middle))
-        met = value >= 0.0
-        # Illinois: an end that stays counts half, so that the other one does not creep.
-        value_high = np.where(met, 0.5 * value_high, value)
-        value_low = np.where(met, value, 0.5 * value_low)
-        low, high = np.where(met, middle, low), np.where(met, high, middle)
-    return np.asarray(low)
-
-
 def _place_in_arcs(curves: Sequence[Curve], level: Array, present: Array) -> Array:
     """The turn to the middle of what the arcs at `level` have in common; ties as in `shared_setting`.
 
     Each part of the intersection begins at the lower end of some arc; its upper end is the nearest
     upper end above that.
     """
-    middles, halves = _arcs(curves, level)
+    middles, halves = arcs(curves, level)
     flat = _flat(curves, level)
     best = np.full(np.shape(level), np.nan)
     for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
@@ -152,7 +50,7 @@ def _place_in_arcs(curves: Sequence[Curve], level: Array, present: Array) -> Arr
                 # An arc that ends where this one begins, not one that reaches half a turn further.
                 ahead = np.where(ahead > 180.0 - TIE_DEG, 0.0, ahead)
             reach = np.where(other_half >= WHOLE_CIRCLE, reach, np.minimum(reach, ahead))
-        good = (half < WHOLE_CIRCLE) & (half >= 0.0) & _in_all(start, middles, halves, number)
+        good = (half < WHOLE_CIRCLE) & (half >= 0.0) & in_all(start, middles, halves, number)
         turn = _turn_into_part(start - present, np.where(np.isfinite(reach), reach, 0.0), flat)
         better = np.isnan(best) | (np.abs(turn) < np.abs(best) - TIE_DEG)
         clockwise = (np.abs(np.abs(turn) - np.abs(best)) <= TIE_DEG) & (turn > best)
@@ -216,7 +114,7 @@ def shared_setting(curves: Sequence[Curve], present: ArrayLike) -> Shared:
         present.shape,
         *(array.shape for response, held in curves for array in (response.suits, response.noise, held)),
     )
-    low = _search(curves, shape)
+    low = greatest_excess(curves, shape)
     turn = _place_in_arcs(curves, low - BACK_OFF_DB, np.broadcast_to(present, shape))
     excess = least_excess(curves, present + turn)
     window_low, window_high = _window(curves, present, turn)
@@ -227,7 +125,7 @@ def shared_setting(curves: Sequence[Curve], present: ArrayLike) -> Shared:
 
 def _window(curves: Sequence[Curve], present: Array, turn: Array) -> tuple[Array, Array]:
     """Turns at which the first curve is left, going down and going up from the shared setting."""
-    middles, halves = _arcs(curves, np.zeros(np.shape(turn)))
+    middles, halves = arcs(curves, np.zeros(np.shape(turn)))
     down = np.full(np.shape(turn), np.inf)
     up = np.full(np.shape(turn), np.inf)
     for middle, half in zip(middles, halves, strict=True):
