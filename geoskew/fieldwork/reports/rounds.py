@@ -72,7 +72,7 @@ class Gathered:
 class _Visit:
     """What one visit and the readings after it say of one site."""
 
-    day: date
+    day: date  # of its last row
     visited: bool
     after: bool
     contradicted: bool = False
@@ -122,6 +122,7 @@ class Gathering:
             if not came:
                 for row, moment in zip(group, moments, strict=True):
                     if visits:
+                        visits[-1].day = day
                         self._signal(visits[-1], row, "left", moment, row.quality_after)
                     else:
                         early.append((row, moment))
