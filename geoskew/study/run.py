@@ -13,6 +13,7 @@ import numpy as np
 from geoskew.decision import ACTIONS
 from geoskew.layers import REGISTRY
 from geoskew.outputs import cards, contours, fieldmap, summary, tables, visits
+from geoskew.outputs.report import write_report
 from geoskew.outputs.tables import ColumnInfo, layer_column
 from geoskew.study.core import Study
 from geoskew.study.facts import CAUTIONS, card_facts
@@ -21,11 +22,13 @@ from geoskew.study.outfiles import folder_of_results, require_free
 from geoskew.study.plan import Planned, can_plan, judged_suffix, plan_of
 from geoskew.study.rasters import contoured, write_study_rasters
 from geoskew.study.reasons import scenario_notes
+from geoskew.study.report import report_of, sensitivity_rows
 
 Report = Callable[[str, float, float], None]
 
 WORST_SITES: Final = 20
 VISIT_ENDINGS: Final = (".csv", ".gpkg", ".ics", ".xlsx")
+REPORTS: Final = ("report.html", "report.pdf")
 
 
 @dataclass(frozen=True)
@@ -58,6 +61,8 @@ def final_names(study: Study, folder: Path) -> list[Path]:
         names += ["sites.gpkg", "sites.csv", "rejected.csv"]
         if scenario.changeover is not None:
             names += ["cards.html", "cards.pdf"]
+    if scenario.changeover is not None:
+        names += REPORTS
     if can_plan(study):
         names += [f"visits{ending}" for ending in VISIT_ENDINGS]
     return [folder / name for name in names]
@@ -92,7 +97,9 @@ def run(study: Study, folder: Path, settings: Settings, report: Report) -> Writt
         if remark := fieldmap.size_remark(size):
             written.remarks.append(remark)
         report("field map", 1, 1)
-        _lists(study, folder, rasters, planned, written)
+        rows = sensitivity_rows(study, report) if study.scenario.has_sites else None
+        _report(study, folder, planned, rows, written, report)
+        _lists(study, folder, rasters, planned, rows, written)
     if study.scenario.has_sites:
         written.remarks += study.sites.warnings
     return written
@@ -157,8 +164,29 @@ def _sites_and_plan(study: Study, folder: Path, written: Written, report: Report
     return planned
 
 
+def _report(
+    study: Study,
+    folder: Path,
+    planned: Planned | None,
+    rows: list[dict[str, Any]] | None,
+    written: Written,
+    report: Report,
+) -> None:
+    """The planner's report, where the scenario says when the changeover is."""
+    if study.scenario.changeover is None:
+        return
+    paths = [folder / name for name in REPORTS]
+    written.remarks += write_report(report_of(study, planned=planned, rows=rows, progress=report), *paths)
+    written.files += paths
+
+
 def _lists(
-    study: Study, folder: Path, rasters: dict[str, Path], planned: Planned | None, written: Written
+    study: Study,
+    folder: Path,
+    rasters: dict[str, Path],
+    planned: Planned | None,
+    rows: list[dict[str, Any]] | None,
+    written: Written,
 ) -> None:
     columns: list[ColumnInfo] = []
     if study.scenario.has_sites:
@@ -166,7 +194,10 @@ def _lists(
     known = {column.name for column in columns}
     columns += [layer_column(REGISTRY[name]) for name in rasters if name not in known]
     tables.write_dictionary(folder / "columns.csv", columns)
-    summary.write_summary(folder / "summary.json", summary_of(study, rasters, planned))
+    content = summary_of(study, rasters, planned)
+    if rows is not None:
+        content["sensitivity"] = rows
+    summary.write_summary(folder / "summary.json", content)
     written.files += [folder / "columns.csv", folder / "summary.json"]
 
 
