@@ -38,23 +38,24 @@ def command(
     debug: bool,
 ) -> None:
     """The planner's report: what changes, for whom, and how sure that is, on a few pages."""
-    from geoskew.outputs.files import require_free
     from geoskew.outputs.report import require_known_ending, write_report
     from geoskew.study.comparison import open_other
     from geoskew.study.comparisonreport import comparison_names, comparison_of, write_beside
     from geoskew.study.core import Study
+    from geoskew.study.outfiles import require_folder, require_free
     from geoskew.study.report import report_of
 
     require_known_ending(out)
+    require_folder(out.parent)
     study = Study(scenario, strict=strict)
     written = [out]
     with console.progress(quiet=quiet) as progress:
         if against is None:
-            require_free([out], overwrite=overwrite)
+            require_free(study, [out], overwrite=overwrite)
             remarks = write_report(report_of(study, progress=progress), out)
         else:
             other = open_other(against)
-            require_free([out, *comparison_names(study, out)], overwrite=overwrite)
+            require_free(study, [out, *comparison_names(study, out)], overwrite=overwrite)
             made = comparison_of(study, other)
             written += write_beside(study, other, out)
             remarks = write_report(made, out)
