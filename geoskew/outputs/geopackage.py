@@ -9,8 +9,6 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, Final
 
-from geoskew.errors import OutputError
-
 # Stands for "no date": the time of writing would give other bytes for the same content.
 _NO_DATE: Final = "1970-01-01T00:00:00.000Z"
 
@@ -89,8 +87,8 @@ def add_layer(
 
     Raises
     ------
-    OutputError
-        The library could not write it.
+    OSError
+        The library could not write it; `files.writing` says so of the final name.
     """
     import pyogrio
     from pyogrio.errors import DataLayerError, DataSourceError, FieldError, GeometryError
@@ -114,7 +112,7 @@ def add_layer(
             },
         )
     except (DataLayerError, DataSourceError, FieldError, GeometryError) as error:
-        raise OutputError(f"{path.name}, layer {layer}: {error}") from error
+        raise OSError(f"layer {layer}: {error}") from error
 
 
 def describe(path: Path, layers: Mapping[str, Sequence[About]]) -> None:
@@ -122,8 +120,8 @@ def describe(path: Path, layers: Mapping[str, Sequence[About]]) -> None:
 
     Raises
     ------
-    OutputError
-        The database could not be written.
+    OSError
+        The database could not be written; `files.writing` says so of the final name.
     """
     rows = [
         (layer, about.column, about.column, about.title or about.column, about.description)
@@ -143,4 +141,4 @@ def describe(path: Path, layers: Mapping[str, Sequence[About]]) -> None:
                 rows,
             )
     except sqlite3.Error as error:
-        raise OutputError(f"{path.name}: {error}") from error
+        raise OSError(f"the meaning of its columns: {error}") from error

@@ -2,28 +2,13 @@
 
 from __future__ import annotations
 
-import math
 from pathlib import Path
-from typing import Final
 
 from geoskew.errors import InputError, Problem
 from geoskew.fieldwork.visits import read_distances
-from geoskew.layers import REGISTRY
-from geoskew.outputs.contours.source import MOST_CELLS
 from geoskew.study.core import Study
-from geoskew.study.rasters import contoured
+from geoskew.study.foretold import bytes_of_run, in_words
 from geoskew.study.run import final_names
-
-# Bytes that a run leaves, as the bundled scenarios have them: of a stored layer by cell, of any GeoTIFF
-# besides, of contours by layer and by cell along the side of a square region, of all that is written
-# about a site, and of what stands in every folder.
-A_CELL: Final = 0.8
-A_CLASS_CELL: Final = 0.03
-A_RASTER: Final = 5_000
-A_CONTOURED_LAYER: Final = 25_000
-A_CONTOURED_SIDE: Final = 170
-A_SITE: Final = 16_000
-A_FOLDER: Final = 700_000
 
 
 def check(path: Path) -> tuple[list[Problem], list[str]]:
@@ -41,7 +26,7 @@ def check(path: Path) -> tuple[list[Problem], list[str]]:
     lines = [study.scenario.title, study.judged, *_region(study), *_sites(study)]
     if study.scenario.region is not None or study.scenario.has_sites:
         names = final_names(study, Path("DIR"))
-        lines.append(f"a run writes {len(names)} files, about {_size(foretold_bytes(study))} in all:")
+        lines.append(f"a run writes {len(names)} files, about {in_words(bytes_of_run(study))} in all:")
         lines += [f"  {name.as_posix()}" for name in names]
     return _rejected(study), lines
 
@@ -83,26 +68,3 @@ def _sites(study: Study) -> list[str]:
         return ["no [sites]: no site table, no cards, no visits"]
     found = study.sites
     return [f"sites: {len(found)} usable rows of {found.source.name}", *found.warnings]
-
-
-def foretold_bytes(study: Study) -> float:
-    """About how many bytes a run writes."""
-    total = float(A_FOLDER)
-    if study.scenario.region is not None:
-        cells, names = study.grid.cells, study.raster_names
-        classes = sum(REGISTRY[name].is_class for name in names)
-        total += A_RASTER * len(names) + cells * (A_CLASS_CELL * classes + A_CELL * (len(names) - classes))
-        # Contours of very large grids are drawn on fewer cells.
-        side = math.sqrt(min(cells, MOST_CELLS))
-        total += len(contoured(None, study)) * (A_CONTOURED_LAYER + A_CONTOURED_SIDE * side)
-    if study.scenario.sites is not None:
-        total += A_SITE * len(study.sites)
-    return total
-
-
-def _size(count: float) -> str:
-    for unit in ("bytes", "kB", "MB", "GB"):
-        if count < 1000.0:
-            return f"{count:.3g} {unit}"
-        count /= 1000.0
-    return f"{count:.3g} TB"

@@ -14,6 +14,7 @@ from geoskew.evaluate import chosen
 from geoskew.layers import REGISTRY
 from geoskew.outputs import contours, raster
 from geoskew.study.core import Study
+from geoskew.study.foretold import bytes_of_rasters, require_room
 from geoskew.study.outfiles import folder_of_results, require_free
 
 Report = Callable[[str, float, float], None]
@@ -63,6 +64,8 @@ def write_study_rasters(
     study.read()
     grid, inputs = study.grid, study.inputs
     require_free(study, [folder / f"{name}.tif" for name in wanted], overwrite=overwrite)
+    # Work files and results stand side by side until the last one is done.
+    require_room(folder, 2.0 * bytes_of_rasters(grid.cells, wanted))
     phases = {"cells": "computing cells", "files": "finishing GeoTIFFs"}
 
     def told(phase: str, done: int, total: int) -> None:

@@ -77,6 +77,7 @@ def write_rasters(
         A file could not be written, or reads back differently.
     """
     import rasterio
+    from rasterio._err import CPLE_BaseError
     from rasterio.errors import RasterioError
 
     from geoskew.outputs.raster.finish import finish
@@ -97,7 +98,7 @@ def write_rasters(
                 report("files", index + 1, len(paths))
     except GeoskewError:
         raise
-    except (RasterioError, OSError) as error:
+    except (RasterioError, CPLE_BaseError, OSError) as error:
         raise files.failure(current, error) from error
     return paths
 
