@@ -118,7 +118,10 @@ class Gathering:
         for day, same in groupby(rows, key=lambda one: one.day):
             group = list(same)
             moments = [self._moment(row, facts) for row in group]
-            came = any(self._is_visit(row, moment) for row, moment in zip(group, moments, strict=True))
+            came = any(row.is_visit for row in group)
+            if not visits:
+                # A signal alone is a visit's before the changeover; after it, it may be a monitor's.
+                came = came or any(moment != "after" for moment in moments)
             if not came:
                 for row, moment in zip(group, moments, strict=True):
                     if visits:
@@ -147,11 +150,6 @@ class Gathering:
 
     def _moment(self, row: Report, facts: Facts) -> str:
         return moment_of(row, facts.longitude, self.changeover, self.overlap)
-
-    @staticmethod
-    def _is_visit(row: Report, moment: str) -> bool:
-        """A signal alone is a visit's before the changeover; after it, it may be a monitor's."""
-        return row.is_visit or moment != "after"
 
     def _fill(self, visit: _Visit, group: list[Report], moments: list[str], facts: Facts) -> None:
         for row, moment in zip(group, moments, strict=True):

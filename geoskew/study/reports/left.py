@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
-from datetime import date, datetime, timedelta
+from datetime import date, timedelta
 from typing import TYPE_CHECKING, Any, Final
 
 import numpy as np
@@ -88,7 +88,8 @@ def left_of(
     assert scenario.changeover is not None  # for the type checker: the command requires it
     days = [day for day in found.day if day is not None]
     first_day = _first_day(study, max(days) if days else None)
-    late = _is_late(first_day, scenario.changeover, scenario.overlap_hours)
+    # No visit ahead of the changeover is possible any more.
+    late = first_day > scenario.changeover.date()
     table = study.assessed.table
     action = _actions(table, found, late=late)
     rows = np.flatnonzero(action != "")
@@ -122,11 +123,6 @@ def _first_day(study: Study, last: date | None) -> date:
         return planned or (study.scenario.changeover - timedelta(weeks=4)).date()
     following = last + timedelta(days=1)
     return following if planned is None else max(following, planned)
-
-
-def _is_late(first_day: date, changeover: datetime, overlap_hours: float) -> bool:
-    """Whether work begins after the changeover, so that no visit ahead of it is possible any more."""
-    return first_day > (changeover + timedelta(hours=overlap_hours)).date()
 
 
 def _actions(table: pd.DataFrame, found: Reconciled, *, late: bool) -> np.ndarray:
