@@ -47,9 +47,10 @@ def _tours(sheets: VisitSheets) -> list[Any]:
     by_day = dict(list(sheets.visits.groupby(["crew", "day"], sort=False)))
     lines = []
     for load in sheets.days.to_dict("records"):
-        visits = by_day[load["crew"], load["day"]].sort_values("order")
-        lon = np.array([load["base_lon"], *visits["lon"], load["base_lon"]], dtype=float)
-        lat = np.array([load["base_lat"], *visits["lat"], load["base_lat"]], dtype=float)
+        # A day of a round may be spent driving alone.
+        visits = by_day.get((load["crew"], load["day"]), sheets.visits.iloc[:0]).sort_values("order")
+        lon = np.array([load["start_lon"], *visits["lon"], load["end_lon"]], dtype=float)
+        lat = np.array([load["start_lat"], *visits["lat"], load["end_lat"]], dtype=float)
         lines.append(shapely.LineString(np.column_stack((np.unwrap(lon, period=360.0), lat))))
     return lines
 
