@@ -17,7 +17,7 @@ from geoskew.errors import InputError, Problem
 Array = NDArray[np.float64]
 
 # EIRP that a satellite can have towards a place, dBW; anything else is another quantity or unit.
-PLAUSIBLE_DBW: Final = (-30.0, 100.0)
+PLAUSIBLE_DBW: Final = (-30.0, 75.0)
 # A raster up to this many cells is kept in memory; of a larger one only the window asked for is read.
 KEPT_CELLS: Final = 25_000_000
 # Cells along each side of the thinned-out look at the values.
