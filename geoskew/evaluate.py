@@ -19,7 +19,7 @@ NO_CLASS = 255
 
 
 def available(scenario: Scenario, *, sites: bool = True) -> tuple[str, ...]:
-    """Names of the layers that a scenario can give, in the registry's order; with `sites` those of lists too."""
+    """Names of the layers that a scenario can give, in order; with `sites` those of lists too."""
     has = {part for part in ("weather", "terrain") if getattr(scenario, part) is not None}
     return tuple(
         name
@@ -97,6 +97,6 @@ def _values(record: Layer, situation: Situation) -> NDArray[Any]:
     if situation.places.inside is not None:
         wanted = wanted & situation.places.inside
     values = np.asarray(record.compute(situation))
-    if record.is_class:
-        return np.array(np.broadcast_to(np.where(wanted, values, NO_CLASS), situation.places.shape), dtype=np.uint8)
-    return np.array(np.broadcast_to(np.where(wanted, values, np.nan), situation.places.shape), dtype=np.float64)
+    kept = np.where(wanted, values, NO_CLASS if record.is_class else np.nan)
+    dtype = np.uint8 if record.is_class else np.float64
+    return np.array(np.broadcast_to(kept, situation.places.shape), dtype=dtype)

@@ -82,7 +82,9 @@ def in_local_frame(vector: Array, longitude: ArrayLike, latitude: ArrayLike) -> 
     )
 
 
-def line_of_sight(longitude: ArrayLike, latitude: ArrayLike, height: ArrayLike, satellite: Array) -> LineOfSight:
+def line_of_sight(
+    longitude: ArrayLike, latitude: ArrayLike, height: ArrayLike, satellite: Array
+) -> LineOfSight:
     """Direction and distance from places to a satellite.
 
     Parameters

@@ -7,6 +7,7 @@ towards the satellite; the two are the same turning, so a tilt of +t adds +t to 
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import Final, NamedTuple
 
 import numpy as np
@@ -137,17 +138,24 @@ def mismatch(angle: ArrayLike) -> NDArray[np.float64]:
     """
     wanted = np.cos(np.deg2rad(angle)) ** 2
     floor = 10.0 ** (-MISMATCH_CAP_DB / 10.0)
-    return np.maximum(-10.0 * np.log10(np.maximum(wanted, floor)), 0.0)
+    return np.asarray(np.maximum(-10.0 * np.log10(np.maximum(wanted, floor)), 0.0))
 
 
 def power_sum(*isolations: ArrayLike) -> NDArray[np.float64]:
     """Leak x of several isolations in dB that add as powers, a ratio."""
-    return np.sum([10.0 ** (-np.asarray(one, dtype=np.float64) / 10.0) for one in np.broadcast_arrays(*isolations)], axis=0)
+    return _sum_of_ratios(isolations, 10.0)
 
 
 def amplitude_sum(*isolations: ArrayLike) -> NDArray[np.float64]:
     """Leak a of several isolations in dB that add as worst phasors, a ratio of amplitudes."""
-    return np.sum([10.0 ** (-np.asarray(one, dtype=np.float64) / 20.0) for one in np.broadcast_arrays(*isolations)], axis=0)
+    return _sum_of_ratios(isolations, 20.0)
+
+
+def _sum_of_ratios(isolations: Sequence[ArrayLike], decade: float) -> NDArray[np.float64]:
+    total: NDArray[np.float64] = np.zeros(())
+    for one in isolations:
+        total = total + 10.0 ** (-np.asarray(one, dtype=np.float64) / decade)
+    return total
 
 
 def wanted_and_crossed(angle: ArrayLike, leak: ArrayLike) -> tuple[Array, Array]:
@@ -179,4 +187,4 @@ def discrimination(angle: ArrayLike, leak: ArrayLike, *, phasors: bool = False) 
     factors = wanted_and_crossed_phasors if phasors else wanted_and_crossed
     wanted, crossed = factors(angle, leak)
     floor = 10.0 ** (-MISMATCH_CAP_DB / 10.0)
-    return 10.0 * np.log10(np.maximum(wanted, floor * crossed) / crossed)
+    return np.asarray(10.0 * np.log10(np.maximum(wanted, floor * crossed) / crossed))

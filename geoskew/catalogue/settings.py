@@ -11,7 +11,7 @@ from geoskew.angles import fold
 from geoskew.geometry import Array
 from geoskew.layers import layer
 from geoskew.situation import Situation
-from geoskew.situation.carriers import Moment, UNTOUCHED
+from geoskew.situation.carriers import UNTOUCHED, Moment
 
 BOTH = ("before", "after")
 _SETTING: dict[str, Any] = {
