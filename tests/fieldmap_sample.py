@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from dataclasses import dataclass
+from functools import cache
 from pathlib import Path
 from typing import Any
 
@@ -216,6 +217,7 @@ def rings(file: Path, name: str) -> list[Any]:
     return out
 
 
+@cache
 def basemap() -> Basemap:
     """The bundled outlines where they are at hand, else a plain block of land."""
     file = Path(__file__).parents[1] / "data" / "natural-earth" / "countries-50m.json"

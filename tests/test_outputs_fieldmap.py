@@ -34,7 +34,13 @@ from geoskew.outputs.fieldmap import (
 )
 from geoskew.outputs.fieldmap.blocks import inert_json, pack
 from geoskew.outputs.fieldmap.lines import unrolled
-from geoskew.outputs.fieldmap.overlays import MercatorGrid, delta_coded, mercator_y, to_mercator
+from geoskew.outputs.fieldmap.overlays import (
+    MercatorGrid,
+    delta_coded,
+    mercator_y,
+    shown_limits,
+    to_mercator,
+)
 from geoskew.outputs.fieldmap.quantise import quantise
 
 ASSETS = Path(sample.__file__).parents[1] / "geoskew" / "outputs" / "fieldmap" / "assets"
@@ -543,3 +549,27 @@ def test_scripts_parse(needs_tool: Callable[[str], str]) -> None:
     for file in sorted((ASSETS / "js").glob("*.js")):
         done = subprocess.run([node, "--check", str(file)], capture_output=True, text=True, check=False)
         assert done.returncode == 0, done.stderr
+
+
+@pytest.mark.parametrize(
+    ("ramp", "limits", "values", "wanted"),
+    [
+        ("signed", (-90.0, 90.0), (-21.0, 14.0), [-25.0, 25.0]),
+        ("signed", (-90.0, 90.0), (-89.0, 14.0), [-90.0, 90.0]),
+        ("margin", (-12.0, 12.0), (2.0, 40.0), [-12.0, 12.0]),
+        ("loss", (0.0, 6.0), (0.3, 1.1), [0.0, 1.5]),
+        ("level", (0.0, 90.0), (31.0, 58.0), [30.0, 60.0]),
+        ("level", (38.0, 56.0), (70.0, 75.0), [70.0, 75.0]),
+        ("cycle", (0.0, 360.0), (10.0, 20.0), [0.0, 360.0]),
+    ],
+)
+def test_colours_span_the_values_with_round_ends(
+    ramp: str, limits: tuple[float, float], values: tuple[float, float], wanted: list[float]
+) -> None:
+    of = sample.layer("x", "deg", ramp, limits)
+    assert shown_limits(of, np.array([*values, np.nan])) == pytest.approx(wanted)
+
+
+def test_colours_without_values_keep_the_limits_of_the_layer() -> None:
+    assert shown_limits(sample.ELEVATION, np.full((2, 2), np.nan)) == [0.0, 90.0]
+    assert shown_limits(sample.ACTION, np.zeros((2, 2), np.uint8)) == [0.0, 5.0]

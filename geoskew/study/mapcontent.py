@@ -89,7 +89,7 @@ def map_content(
         contours=[line for line in lines if not line.layer.startswith("eirp_")],
         coverage=[line for line in lines if line.layer.startswith("eirp_")],
         routes=[] if planned is None else _routes(planned),
-        basemap=_basemap(shown_bounds(study)),
+        basemap=_basemap,
         tiles=background(tiles),
     )
 
@@ -257,8 +257,5 @@ def _basemap(bounds: tuple[float, float, float, float]) -> Basemap:
     def rings(geometry: Any) -> list[Any]:
         return [shapely.get_coordinates(part) for part in shapely.get_parts(geometry)]
 
-    land = [
-        shapely.get_coordinates(shapely.get_exterior_ring(part))
-        for part in shapely.get_parts(outline("land", bounds))
-    ]
+    land = rings(shapely.get_rings(shapely.get_parts(outline("land", bounds))))
     return Basemap(land=land, borders=rings(outline("borders", bounds)), attribution=BASEMAP_THANKS)

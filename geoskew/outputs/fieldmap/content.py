@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any, Literal, Protocol
 
@@ -13,6 +13,9 @@ from geoskew.layers import Layer
 
 if TYPE_CHECKING:
     import pandas as pd
+
+# West, south, east, north in degrees; east may run past 180.
+Box = tuple[float, float, float, float]
 
 
 class ColumnFact(Protocol):
@@ -122,7 +125,9 @@ class MapContent:
     (``action`` as its name) and passed-through columns. ``provenance`` is shown line by line, the date
     of making included, so that the same content gives the same bytes. ``judged_in`` says which margins
     decide, ``reserve_db`` where the line of the reserve stands. ``identity`` keeps ticks made on one map
-    apart from those of another; the digest of the scenario serves well.
+    apart from those of another; the digest of the scenario serves well. ``basemap`` may be a function
+    that gives the outlines of a box: the map shows more than its sites and layers, and how much more
+    is settled when it is written.
     """
 
     title: str
@@ -138,7 +143,7 @@ class MapContent:
     contours: Sequence[ContourLine] = ()
     coverage: Sequence[ContourLine] = ()
     routes: Sequence[Route] = ()
-    basemap: Basemap = field(default_factory=Basemap)
+    basemap: Basemap | Callable[[Box], Basemap] = field(default_factory=Basemap)
     places: Sequence[PlaceName] = ()
     tiles: Tiles | None = None
     privacy_note: str = ""

@@ -6,8 +6,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from geoskew.outputs.fieldmap.content import MapContent
-from geoskew.outputs.fieldmap.lines import Box, near
+from geoskew.outputs.fieldmap.content import Box, MapContent
+from geoskew.outputs.fieldmap.lines import near
 from geoskew.outputs.fieldmap.overlays import MOST_LATITUDE, latitude_of, mercator_y, to_mercator
 
 

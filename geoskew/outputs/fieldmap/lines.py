@@ -9,10 +9,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from geoskew.outputs.fieldmap.blocks import pack
-from geoskew.outputs.fieldmap.content import Basemap, ContourLine, Route
+from geoskew.outputs.fieldmap.content import Basemap, Box, ContourLine, Route
 from geoskew.outputs.fieldmap.quantise import degrees_as_integers
 
-Box = tuple[float, float, float, float]
 # 1e-4 degree is 11 m; the bundled outlines are coarser by a factor of twenty.
 LINE_DECIMALS: Final = 4
 BASE_DECIMALS: Final = 3

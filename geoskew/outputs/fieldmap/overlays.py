@@ -14,6 +14,7 @@ from typing import Any, Final
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from geoskew.layers import Layer
 from geoskew.outputs.fieldmap.blocks import pack
 from geoskew.outputs.fieldmap.content import Overlay
 from geoskew.outputs.fieldmap.quantise import quantise, step_of
@@ -142,6 +143,38 @@ def delta_coded(codes: NDArray[np.uint16]) -> NDArray[np.uint16]:
     return down
 
 
+# Round ends for a scale of colours, times powers of ten.
+_ROUND: Final = (1.0, 1.5, 2.0, 2.5, 3.0, 4.0, 5.0, 6.0, 8.0, 10.0)
+
+
+def _rounded_up(value: float) -> float:
+    power = 10.0 ** np.floor(np.log10(value))
+    return float(next(one * power for one in _ROUND if one * power >= value * (1.0 - 1e-9)))
+
+
+def shown_limits(layer: Layer, values: NDArray[Any]) -> list[float]:
+    """What the colours span: the layer's limits, narrowed to where its values lie.
+
+    All but the outermost two percent of the values on either side are inside. Ramps about zero stay
+    even about it, losses start where the layer does, and a full circle stays a full circle.
+    """
+    low, high = layer.limits
+    good = values[np.isfinite(values)] if not layer.is_class else values[:0]
+    if good.size == 0 or layer.ramp == "cycle":
+        return [low, high]
+    least, most = (float(one) for one in np.percentile(good, (2.0, 98.0)))
+    if layer.ramp in ("signed", "margin"):
+        reach = min(high, _rounded_up(max(abs(least), abs(most), 1.0)))
+        return [-reach, reach]
+    if layer.ramp == "loss":
+        return [low, max(low, min(high, low + _rounded_up(max(most - low, 0.1))))]
+    step = 10.0 ** np.floor(np.log10(max(most - least, 0.1)))
+    first, last = float(np.floor(least / step) * step), float(np.ceil(most / step) * step)
+    # A layer far outside its usual limits keeps its own.
+    narrowed = [max(low, first), min(high, last)]
+    return narrowed if narrowed[0] < narrowed[1] else [first, max(last, first + step)]
+
+
 def packed_overlay(overlay: Overlay) -> tuple[dict[str, Any], str]:
     """Facts of an overlay for the page, and its packed grid."""
     grid = to_mercator(overlay)
@@ -158,6 +191,7 @@ def packed_overlay(overlay: Overlay) -> tuple[dict[str, Any], str]:
         "east": grid.east,
         "north": grid.north,
         "south": grid.south,
+        "limits": shown_limits(overlay.layer, grid.values),
         "offset": offset,
         "step": step,
     }

@@ -85,10 +85,11 @@ def compose(content: MapContent) -> str:
             blocks[name] = packed_contours(lines, middle=middle, tolerance=tolerance)
     if content.routes:
         blocks["routes"] = packed_routes(content.routes, middle=middle)
-    blocks["basemap"] = packed_basemap(content.basemap, extent.frame())
+    basemap = content.basemap(extent.frame()) if callable(content.basemap) else content.basemap
+    blocks["basemap"] = packed_basemap(basemap, extent.frame())
     meta = {**_words(content), **_look(content, extent), "sites": {"count": count}, "pictures": pictures}
     meta["columns"] = column_facts(content.columns, names)
-    meta["thanks"] = {"basemap": content.basemap.attribution, "leaflet": leaflet_notice()}
+    meta["thanks"] = {"basemap": basemap.attribution, "leaflet": leaflet_notice()}
     return page(
         title=content.title,
         middle=((extent.south + extent.north) / 2.0, middle),
@@ -152,7 +153,7 @@ def _layer(layer: Layer) -> dict[str, Any]:
         "unit": layer.unit,
         "description": layer.description,
         "kind": layer.kind,
-        "limits": list(layer.limits),
+        "period": layer.period,
         "ramp": [list(stop) for stop in RAMPS[layer.ramp]],
         "classes": classes,
     }

@@ -84,7 +84,7 @@
     const picture = fm.shownPicture();
     const marks = fm.meta.classes.filter((kind) => fm.choice && fm.choice.counts.get(kind.code) > 0);
     const parts = [];
-    if (picture) parts.push(pictureKey(picture.record));
+    if (picture) parts.push(pictureKey(picture));
     if (marks.length) {
       parts.push(fm.element("ul", { class: "key-marks" }, marks.map((kind) => fm.element("li", {}, fm.shapeElement(kind, 18), kind.name))));
     }
@@ -98,10 +98,11 @@
     fm.replace(box, details);
   };
 
-  function pictureKey(record) {
+  function pictureKey(picture) {
+    const { record } = picture;
     const nothing = fm.element("span", { class: "key-none" }, fm.element("i", { class: "swatch empty" }), fm.none);
     // The marks' own key names the actions already.
-    if (record === fm.meta.layers.action && fm.sites.count) return nothing;
+    if (picture.layer === "action" && fm.sites.count) return fm.element("div", { class: "key-ramp" }, nothing);
     if (record.classes.length) {
       const rows = record.classes.map(([, name, colour]) => {
         const swatch = fm.element("i", { class: "swatch" });
@@ -112,8 +113,9 @@
     }
     const bar = fm.element("div", { class: "bar" });
     bar.style.background = `linear-gradient(to right, ${record.ramp.map(([at, colour]) => `${colour} ${at * 100}%`).join(", ")})`;
-    const [low, high] = record.limits;
-    const marks = record.kind === "circular" ? ["", ""] : ["≤ ", "≥ "];
+    const [low, high] = picture.limits;
+    // All the way around there is nothing beyond the ends.
+    const marks = record.kind === "circular" && high - low >= record.period ? ["", ""] : ["≤ ", "≥ "];
     const middle = (low + high) / 2;
     return fm.element(
       "div", { class: "key-ramp" }, bar,

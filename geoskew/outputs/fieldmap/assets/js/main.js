@@ -187,7 +187,8 @@
   async function start() {
     const meta = (fm.meta = fm.readMeta());
     fm.byId("title").textContent = fm.shortened(meta.title, 200);
-    const first = meta.provenance.slice(0, 2).map(([, value]) => fm.shortened(value, 60));
+    // The first short lines; a checksum is for the page of notes.
+    const first = meta.provenance.map(([, value]) => value).filter((value) => value.length <= 40).slice(0, 2);
     fm.byId("subtitle").textContent = first.join(" · ");
     fm.startTheme();
     fm.startTabs();

@@ -67,7 +67,8 @@
     }
 
     colourOf(value) {
-      const { classes, limits, ramp } = this.record;
+      const { classes, ramp } = this.record;
+      const { limits } = this;
       if (classes.length) {
         const found = classes.find((entry) => entry[0] === Math.round(value));
         return found ? channels(found[2]) : [128, 128, 128];
