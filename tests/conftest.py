@@ -12,13 +12,16 @@ import os
 import shutil
 import socket
 import subprocess
+import tempfile
 from collections.abc import Callable, Generator, Iterator
 from pathlib import Path
+from urllib.parse import quote
 
 import pytest
 
 REQUIRE_ALL = os.environ.get("GEOSKEW_REQUIRE_ALL", "") not in ("", "0")
 NOT_APPLICABLE = ("not applicable", "the superuser may")
+POSTGIS_PASSWORD = "s3cret@of:the/tests"
 # Names that a tool goes by, and folders beside PATH where Debian puts servers.
 OTHER_NAMES = {"chromium": ("chromium", "chromium-browser")}
 SERVER_FOLDERS = sorted(Path("/usr/lib/postgresql").glob("*/bin"), reverse=True)
@@ -71,46 +74,41 @@ def needs_node_package() -> Callable[[str], Path]:
 
 
 @pytest.fixture(scope="session")
-def postgis_url(needs_tool: Callable[[str], str], tmp_path_factory: pytest.TempPathFactory) -> Iterator[str]:
-    """Address of a private PostGIS database on the loopback interface, gone after the tests; or skip."""
+def postgis_url(needs_tool: Callable[[str], str]) -> Iterator[str]:
+    """Address of a private PostGIS database on the loopback interface, gone after the tests; or skip.
+
+    The server asks for passwords; the one in the address has signs that are written as %40 and the like.
+    """
     initdb, server = needs_tool("initdb"), needs_tool("postgres")
-    control = needs_tool("pg_ctl")
+    control, psql = needs_tool("pg_ctl"), needs_tool("psql")
     if not any(Path("/usr/share/postgresql").glob("*/extension/postgis.control")):
         pytest.skip("PostGIS is not installed")
     # The server refuses to run as root: the account that came with it takes over.
     as_owner = ["runuser", "-u", "postgres", "--"] if os.geteuid() == 0 else []
-    folder = tmp_path_factory.mktemp("postgis")
+    # Not among pytest's folders: any later session of the superuser's closes those to other accounts.
+    folder = Path(tempfile.mkdtemp(prefix="geoskew-postgis-"))
+    secret = folder / "password"
+    secret.write_text(POSTGIS_PASSWORD + "\n")
     if as_owner:
         shutil.chown(folder, "postgres")
-        for parent in folder.parents:
-            if parent.owner() == "root" and parent.name.startswith("pytest-"):
-                parent.chmod(0o711)
+        shutil.chown(secret, "postgres")
     data, port = folder / "data", _free_port()
     options = f"-p {port} -k {folder} -c listen_addresses=127.0.0.1 -c fsync=off"
+    environment = {**os.environ, "PGPASSWORD": POSTGIS_PASSWORD}
 
     def run(*command: str) -> None:
-        subprocess.run([*as_owner, *command], check=True, capture_output=True, cwd=folder)
+        subprocess.run([*as_owner, *command], check=True, capture_output=True, cwd=folder, env=environment)
 
-    run(initdb, "-D", str(data), "-U", "geoskew", "--auth=trust", "-E", "UTF8", "--locale=C")
+    ways = ["--auth=scram-sha-256", f"--pwfile={secret}", "-E", "UTF8", "--locale=C"]
+    run(initdb, "-D", str(data), "-U", "geoskew", *ways)
     run(control, "-D", str(data), "-o", options, "-l", str(folder / "log"), "-w", "-p", server, "start")
     try:
-        psql = needs_tool("psql")
-        run(
-            psql,
-            "-h",
-            "127.0.0.1",
-            "-p",
-            str(port),
-            "-U",
-            "geoskew",
-            "-d",
-            "postgres",
-            "-c",
-            "CREATE EXTENSION postgis",
-        )
-        yield f"postgresql+psycopg://geoskew@127.0.0.1:{port}/postgres"
+        at = ["-h", "127.0.0.1", "-p", str(port), "-U", "geoskew", "-d", "postgres"]
+        run(psql, *at, "-c", "CREATE EXTENSION postgis")
+        yield f"postgresql://geoskew:{quote(POSTGIS_PASSWORD, safe='')}@127.0.0.1:{port}/postgres"
     finally:
         run(control, "-D", str(data), "-m", "immediate", "stop")
+        shutil.rmtree(folder)
 
 
 def _free_port() -> int:

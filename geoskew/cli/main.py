@@ -33,6 +33,7 @@ COMMANDS: Final[dict[str, str]] = {
     "zones": "Areas within which one setting serves.",
     "report": "The planner's report.",
     "fieldmap": "The self-contained HTML map.",
+    "database": "Tables for results in a PostGIS database.",
     "layers": "The list of layers: name, unit, meaning.",
 }
 

@@ -42,13 +42,13 @@ out_folder = click.option(
 )
 
 
-def out_file(endings: str) -> Decorator:
+def out_file(endings: str, *, required: bool = True) -> Decorator:
     """`--out FILE`, with the endings that choose the format."""
     return click.option(
         "--out",
         "out",
         type=HomePath(),
-        required=True,
+        required=required,
         metavar="FILE",
         help=f"File to write; its ending chooses the format: {endings}.",
     )
@@ -82,6 +82,11 @@ workers = click.option(
     default=None,
     metavar="N",
     help="Threads to compute with. [cores]",
+)
+to_database = click.option(
+    "--to-database",
+    is_flag=True,
+    help="Write into the tables of [database] too; 'geoskew database' makes them.",
 )
 tiles = click.option(
     "--tiles",

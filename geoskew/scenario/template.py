@@ -170,9 +170,12 @@ step_deg = 0.25
 #solver_seconds = 5
 
 # ---- Optional: a database; the environment variable holds its address, which never stands here --------
+# query gives the site list in place of [sites]; table takes results, where run (else this file's name)
+# tells the rows of this study from those of others.
 #[database]
 #url_env = "SITES_DATABASE"
 #query = "select id, lat, lon from sites"
 #id = "id"
-#table = "assessed_sites"                   # results go here too; run, default the scenario file's name
+#table = "assessed_sites"
+#run = "plan"
 """

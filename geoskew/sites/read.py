@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
@@ -32,7 +33,7 @@ TOLD = 3
 
 
 def read_sites(scenario: Scenario, *, compare: bool = True) -> SiteList:
-    """Read the scenario's site list.
+    """Read the scenario's site list, from its file or its database.
 
     Parameters
     ----------
@@ -48,37 +49,49 @@ def read_sites(scenario: Scenario, *, compare: bool = True) -> SiteList:
     Raises
     ------
     MissingPartError
-        If the scenario has no ``[sites]``.
+        If the scenario has neither ``[sites]`` nor a ``[database]`` with a query.
     InputError
         If encoding, separator or decimal sign cannot be told, a column is missing, no row can be
         used, or the region that positions are compared with is wrong.
+    GeoskewError
+        The database cannot be reached.
     """
     scenario.require("sites", for_what="an assessed site list")
-    settings = scenario.sites
-    assert settings is not None  # held by the line above
-    table = _open(settings)
+    table, columns = _table(scenario)
     required: tuple[str, ...] = REQUIRED
     if table.positions is not None:
-        if {"lat", "lon"} & set(settings.columns):
+        if {"lat", "lon"} & set(columns):
             table = replace(table, positions=None)
         else:
             required, table = ("id",), without_copies(table)
     found = headers.match(
         list(table.frame.columns),
-        settings.columns,
+        columns,
         required=required,
         file=table.path,
         scenario_path=scenario.path,
         unused=("lat", "lon") if table.positions is not None else (),
     )
     grid = grid_of(scenario) if compare and scenario.region is not None else None
-    checked = check_rows(table, found, crs=settings.crs, grid=grid)
+    crs = None if scenario.sites is None else scenario.sites.crs
+    checked = check_rows(table, found, crs=crs, grid=grid)
     sites = _listing(table, found, checked)
     if not sites.ids:
         raise _nothing_left(table, sites.rejected)
     if grid is not None:
         sites.warnings.extend(_swapped(grid, sites))
     return sites
+
+
+def _table(scenario: Scenario) -> tuple[RawTable, Mapping[str, str]]:
+    """Rows of the file or of the database's query, and which of their columns are which of ours."""
+    if scenario.sites is not None:
+        return _open(scenario.sites), scenario.sites.columns
+    from geoskew.sites.query import read_query
+
+    assert scenario.database is not None  # for the type checker: require() has seen a source of sites
+    name = scenario.database.id
+    return read_query(scenario), {} if name == "id" else {"id": name}
 
 
 def _open(settings: SitesTable) -> RawTable:

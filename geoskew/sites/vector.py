@@ -49,7 +49,7 @@ def read_points(path: Path, *, crs: str | None, layer: str | None) -> RawTable:
     positions = None
     frame = pandas.DataFrame(found)
     if isinstance(found, geopandas.GeoDataFrame):
-        positions = _positions(found.geometry, _crs(found.geometry.crs, crs, path))
+        positions = point_positions(found.geometry.to_numpy(), _crs(found.geometry.crs, crs, path))
         frame = pandas.DataFrame(found.drop(columns=found.geometry.name))
     frame.columns = [str(name) for name in frame.columns]
     frame = frame.reset_index(drop=True)
@@ -122,10 +122,11 @@ def _crs(own: Any, given: str | None, path: Path) -> Any:
     raise InputError(Problem(message, file=path))
 
 
-def _positions(geometry: Any, crs: Any) -> Positions:
+def point_positions(geometry: NDArray[Any], crs: Any) -> Positions:
+    """Longitude and latitude of shapes (N,) in a CRS, and what is wrong with those that are no point."""
     import shapely
 
-    shapes = np.asarray(geometry.to_numpy(), dtype=object)
+    shapes = np.asarray(geometry, dtype=object)
     kinds = shapely.get_type_id(shapes)
     single = (kinds == shapely.GeometryType.MULTIPOINT) & (shapely.get_num_geometries(shapes) == 1)
     points = np.where(single, shapely.get_geometry(shapes, 0), shapes)

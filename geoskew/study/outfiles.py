@@ -82,11 +82,11 @@ def folder_of_results(folder: Path) -> Iterator[Path]:
         raise
 
 
-def require_free_with_rejected(study: Study, out: Path, *, overwrite: bool) -> None:
+def require_free_with_rejected(study: Study, out: Path | None, *, overwrite: bool) -> None:
     """Check the name of a result of the site list, and that of the rejected rows beside it.
 
     A list of rejected rows is known by its header, so that the next result into the same folder may
-    replace it.
+    replace it. Without a file, for results in a database alone, it comes to lie in the current folder.
 
     Raises
     ------
@@ -95,17 +95,22 @@ def require_free_with_rejected(study: Study, out: Path, *, overwrite: bool) -> N
     ExistingFileError
         As `require_free`.
     """
-    require_folder(out.parent)
-    rejected = out.parent / REJECTED
-    if out.name == REJECTED:
+    rejected = rejected_beside(out)
+    require_folder(rejected.parent)
+    if out is not None and out.name == REJECTED:
         raise InputError(f"{out}: {REJECTED} is the list of rows that cannot be used; give another name")
-    names = [out]
+    names = [] if out is None else [out]
     if study.scenario.has_sites and not tables.is_rejected_list(rejected):
         names.append(rejected)
     require_free(study, names, overwrite=overwrite)
 
 
-def write_rejected(study: Study, out: Path) -> None:
+def rejected_beside(out: Path | None) -> Path:
+    """Where the rejected rows go: beside a result, else into the current folder."""
+    return Path(REJECTED) if out is None else out.parent / REJECTED
+
+
+def write_rejected(study: Study, out: Path | None) -> None:
     """Write the rejected rows beside a result of the site list; the header alone where there is none.
 
     Raises
@@ -114,4 +119,4 @@ def write_rejected(study: Study, out: Path) -> None:
         The file could not be written.
     """
     if study.scenario.has_sites:
-        tables.write_rejected(out.parent / REJECTED, study.sites.rejected)
+        tables.write_rejected(rejected_beside(out), study.sites.rejected)

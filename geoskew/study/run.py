@@ -15,6 +15,7 @@ from geoskew.layers import REGISTRY
 from geoskew.outputs import cards, contours, fieldmap, summary, tables, visits
 from geoskew.outputs.report import write_report
 from geoskew.outputs.tables import ColumnInfo, layer_column
+from geoskew.study import database
 from geoskew.study.core import Study
 from geoskew.study.facts import CAUTIONS, card_facts
 from geoskew.study.mapcontent import background, contour_names, map_content, overlay_names, provenance
@@ -85,6 +86,7 @@ def run(study: Study, folder: Path, settings: Settings, report: Report) -> Writt
     study.read()
     background(settings.tiles)
     require_free(study, final_names(study, folder), overwrite=settings.overwrite)
+    target = _tables_for_results(study)
     written = Written(remarks=scenario_notes(study.scenario))
     with folder_of_results(folder):
         rasters = _rasters(study, folder, settings, written, report)
@@ -100,9 +102,22 @@ def run(study: Study, folder: Path, settings: Settings, report: Report) -> Writt
         rows = sensitivity_rows(study, report) if study.scenario.has_sites else None
         _report(study, folder, planned, rows, written, report)
         _lists(study, folder, rasters, planned, rows, written)
+        if target is not None:
+            lines = folder / "contours.gpkg" if target.region else None
+            written.remarks += database.write_tables(target, contours=lines)
     if study.scenario.has_sites:
         written.remarks += study.sites.warnings
     return written
+
+
+def _tables_for_results(study: Study) -> database.Target | None:
+    """The database's tables where the scenario names some, found fit to take the results."""
+    if not database.wants_tables(study):
+        return None
+    scenario = study.scenario
+    target = database.target_of(study, sites=scenario.has_sites, region=scenario.region is not None)
+    database.require_ready(target)
+    return target
 
 
 def _rasters(
