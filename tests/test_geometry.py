@@ -223,7 +223,7 @@ def test_below_the_horizon():
     assert range_m[1] == pytest.approx(42_164_170.0 + 6_378_137.0, abs=1e-6)
 
 
-@settings(max_examples=60)
+@settings(max_examples=60, deadline=None)
 @given(st.floats(-89.9, 89.9), st.floats(0.01, 179.0), st.floats(-180.0, 180.0), st.floats(0.0, 9000.0))
 def test_mirrors(latitude, east_of_it, slot, height):
     satellite = geometry.satellite_position(slot)
