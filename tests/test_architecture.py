@@ -55,7 +55,7 @@ MAY_IMPORT: dict[str, set[str]] = {
 # Of the inputs, outputs may see places, regions and the way into a database alone.
 OUTPUTS_MAY_SEE = {"places", "region", "database"}
 # Outputs do not import each other; these serve all of them.
-SHARED_BY_OUTPUTS = {"files", "geopackage"}
+SHARED_BY_OUTPUTS = {"files", "geopackage", "workbooks"}
 # What outputs must not reach, not even by way of others.
 PHYSICS = {"directions", "power", "judgement", "composition", "fieldwork", "engine"}
 # Libraries that speak to the terminal.

@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 import re
-import zipfile
 from collections.abc import Sequence
 from pathlib import Path
 from typing import Any, Final
 
 from geoskew.errors import InputError
+from geoskew.outputs import workbooks
 from geoskew.outputs.tables.columns import ColumnInfo
 from geoskew.outputs.tables.text import Position, times_as_text
 
@@ -17,10 +17,6 @@ _MOST_ROWS: Final = 1_048_575
 _MOST_COLUMNS: Final = 16_384
 _MOST_CHARACTERS: Final = 32_767
 _FORBIDDEN: Final = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f]")
-# The earliest time that a ZIP archive can hold stands for "no date".
-_NO_TIME: Final = (1980, 1, 1, 0, 0, 0)
-_CORE: Final = "docProps/core.xml"
-_TIMES: Final = re.compile(r"(<dcterms:(created|modified)[^>]*>)[^<]*")
 
 
 def write_xlsx(part: Path, content: Any, position: Position, columns: Sequence[ColumnInfo]) -> None:
@@ -46,9 +42,7 @@ def write_xlsx(part: Path, content: Any, position: Position, columns: Sequence[C
     meanings = book.create_sheet("columns")
     for words in (("name", "unit", "meaning"), *((one.name, one.unit, one.meaning) for one in columns)):
         meanings.append([_cell(meanings, word) for word in words])
-    raw = part.with_name("raw.xlsx")
-    book.save(raw)
-    _without_times(raw, part)
+    workbooks.save(book, part)
 
 
 def _require_fits(content: Any, name: str) -> None:
@@ -83,15 +77,3 @@ def _cell(sheet: Any, value: Any) -> Any:
     cell.data_type = "s"
     cell.number_format = "@"
     return cell
-
-
-def _without_times(raw: Path, part: Path) -> None:
-    """The same archive without the time of writing: same content, same bytes."""
-    with zipfile.ZipFile(raw) as source, zipfile.ZipFile(part, "w", zipfile.ZIP_DEFLATED) as target:
-        for name in source.namelist():
-            data = source.read(name)
-            if name == _CORE:
-                data = _TIMES.sub(r"\g<1>1980-01-01T00:00:00Z", data.decode("utf-8")).encode("utf-8")
-            entry = zipfile.ZipInfo(name, _NO_TIME)
-            entry.compress_type = zipfile.ZIP_DEFLATED
-            target.writestr(entry, data)

@@ -7,6 +7,7 @@ from collections.abc import Iterable
 from pathlib import Path
 from typing import Any, Final
 
+from geoskew.outputs import workbooks
 from geoskew.outputs.visits.sheet import VisitSheets, stops
 
 # What a sheet's title and a cell's text cannot hold (ECMA-376).
@@ -32,8 +33,7 @@ def write_workbook(part: Path, sheets: VisitSheets) -> None:
     notes = [("Title", sheets.title), missing, *(("Note", note) for note in sheets.notes)]
     _sheet(book, _title("notes", taken), ("what", "value"), notes)
     book.properties.creator = "geoskew"
-    book.properties.created = book.properties.modified = sheets.changeover.replace(tzinfo=None)
-    book.save(part)
+    workbooks.save(book, part)
 
 
 def _title(name: str, taken: set[str]) -> str:
