@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from typing import Any
 
 import numpy as np
@@ -22,9 +22,7 @@ def available(scenario: Scenario, *, sites: bool = True) -> tuple[str, ...]:
     """Names of the layers that a scenario can give, in order; with `sites` those of lists too."""
     has = {part for part in ("weather", "terrain") if getattr(scenario, part) is not None}
     return tuple(
-        name
-        for name, record in REGISTRY.items()
-        if record.needs <= has and (sites or record.where == "both")
+        name for name, record in REGISTRY.items() if record.needs <= has and (sites or record.where == "both")
     )
 
 
@@ -59,7 +57,12 @@ def _unknown(name: str) -> str:
 
 
 def evaluate(
-    scenario: Scenario, places: Places, names: Iterable[str] | None = None, *, inputs: Inputs | None = None
+    scenario: Scenario,
+    places: Places,
+    names: Iterable[str] | None = None,
+    *,
+    inputs: Inputs | None = None,
+    compiled: bool = False,
 ) -> dict[str, NDArray[Any]]:
     """Values of layers at places.
 
@@ -73,22 +76,44 @@ def evaluate(
     inputs : Inputs, optional
         From `situation.prepare`, to read the scenario's files only once for many blocks.
 
+    compiled : bool
+        Take compiled loops for the layers that they cover, within 1e-4 degrees and dB: for blocks of a
+        grid that is large enough to pay for the compiler. Needs numba; ask `kernels.ready` before.
+
     Returns
     -------
     dict of str to ndarray
-        float64, or uint8 for classes and flags, in the places' shape. No value: NaN, or 255.
+        float64 (float32 out of compiled loops), or uint8 for classes and flags, in the places' shape. No
+        value: NaN, or 255.
 
     Raises
     ------
     InputError
         A layer that does not exist or that the scenario cannot give.
     """
-    situation = Situation(scenario, places, inputs)
+    wanted = chosen(scenario, names)
     with np.errstate(invalid="ignore"):
-        return {name: _values(REGISTRY[name], situation) for name in chosen(scenario, names)}
+        if compiled:
+            return _compiled(scenario, places, wanted, inputs)
+        situation = Situation(scenario, places, inputs)
+        return {name: _values(REGISTRY[name], situation) for name in wanted}
 
 
-def _values(record: Layer, situation: Situation) -> NDArray[Any]:
+def _compiled(
+    scenario: Scenario, places: Places, wanted: tuple[str, ...], inputs: Inputs | None
+) -> dict[str, NDArray[Any]]:
+    from geoskew.situation import compiled
+
+    if not compiled.suits(places):
+        situation = Situation(scenario, places, inputs)
+        return {name: _values(REGISTRY[name], situation) for name in wanted}
+    fast = compiled.CompiledSituation(scenario, places, inputs, wanted)
+    return {name: _values(REGISTRY[name], fast, fast.maker(name)) for name in wanted}
+
+
+def _values(
+    record: Layer, situation: Situation, make: Callable[[], NDArray[Any]] | None = None
+) -> NDArray[Any]:
     wanted = np.ones((), dtype=bool)
     if "before" in record.of:
         wanted = wanted & situation.usable_before
@@ -96,7 +121,11 @@ def _values(record: Layer, situation: Situation) -> NDArray[Any]:
         wanted = wanted & situation.usable_after
     if situation.places.inside is not None:
         wanted = wanted & situation.places.inside
-    values = np.asarray(record.compute(situation))
-    kept = np.where(wanted, values, NO_CLASS if record.is_class else np.nan)
-    dtype = np.uint8 if record.is_class else np.float64
-    return np.array(np.broadcast_to(kept, situation.places.shape), dtype=dtype)
+    values = np.asarray(record.compute(situation) if make is None else make())
+    none = NO_CLASS if record.is_class else np.nan
+    kind = np.uint8 if record.is_class else np.float64 if make is None else np.float32
+    shape = situation.places.shape
+    if wanted.all():
+        # A copy, since layers may share one array.
+        return np.array(np.broadcast_to(values, shape), dtype=kind)
+    return np.array(np.broadcast_to(np.where(wanted, values, none), shape), dtype=kind)

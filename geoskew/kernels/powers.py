@@ -16,13 +16,22 @@ import numpy as np
 from numpy.typing import NDArray
 
 from geoskew.kernels.compiling import compiled
-from geoskew.kernels.elementary import BITS_PER_DECIBEL, cosine, decibels, power_of_two, ratio, sine
+from geoskew.kernels.elementary import (
+    BITS_PER_DECIBEL,
+    IN_DEGREES,
+    cosine,
+    decibels,
+    power_of_two,
+    ratio,
+    sine,
+)
 
 Array = NDArray[np.float64]
 Single = NDArray[np.float32]
 
 # As in ``geoskew.polarisation``: the mismatch loss is capped at 40 dB, the discrimination at −40 dB.
 _FLOOR: Final = 1e-4
+_QUARTER: Final = np.float32(90.0)
 
 
 @compiled
@@ -50,7 +59,13 @@ def clear_noise_row(
 
 @compiled
 def clear_noise(
-    distance: Array, sine_of: Array, eirp_dbw: Array, zenith: Array, terms: Array, noise: Array
+    distance: Array,
+    sine_of: Array,
+    eirp_dbw: Array,
+    zenith: Array,
+    gas: NDArray[np.int64],
+    terms: Array,
+    noise: Array,
 ) -> None:
     """The noise of all carriers of one satellite at every place, into (carrier, H, W).
 
@@ -60,8 +75,8 @@ def clear_noise(
         (H, W): metres, and sine of the elevation.
     eirp_dbw : ndarray
         (H, W), or (1, 1) where it is alike everywhere; NaN outside of the coverage.
-    zenith : ndarray
-        (carrier, H, W): gas towards the zenith, dB.
+    zenith, gas : ndarray
+        (frequency, H, W): gas towards the zenith, dB; and which of these each carrier has, (carrier,).
     terms : ndarray
         (carrier, 5), as `clear_noise_row` takes them.
     """
@@ -72,7 +87,7 @@ def clear_noise(
         else:
             power_row(eirp_dbw[i], power)
         for k in range(terms.shape[0]):
-            clear_noise_row(distance[i], sine_of[i], power, zenith[k, i], terms[k], noise[k, i])
+            clear_noise_row(distance[i], sine_of[i], power, zenith[gas[k], i], terms[k], noise[k, i])
 
 
 @compiled
@@ -174,6 +189,36 @@ def discrimination(z: Array, leak: float, out: Single) -> None:
         crossed = leak + s * (1.0 - leak)
         quotient = wanted / crossed
         out[j] = decibels(_FLOOR if quotient < _FLOOR else quotient)
+
+
+@compiled
+def weakest_noise(
+    noise: Array, leak: Array, terms: Array, of_carrier: Array, without: Array, out: Single
+) -> None:
+    """C/N in dB of the carrier that is weakest in a perfectly set feed, at every place of (H, W).
+
+    `noise`, `leak`, `terms` as in `worst` say which; its C/N is of `of_carrier` (carrier, H, W) less
+    `without` (carrier,), the part that is not thermal.
+    """
+    for i in range(out.shape[0]):
+        for j in range(out.shape[1]):
+            worst_yet, chosen = -1.0, 0
+            for k in range(noise.shape[0]):
+                x = leak[k, i, j] if leak.shape[2] > 1 else leak[k, 0, 0]
+                bad = terms[k, 2] * (terms[k, 0] + noise[k, i, j] + terms[k, 1] * x)
+                if bad > worst_yet:
+                    worst_yet, chosen = bad, k
+            out[i, j] = -decibels(of_carrier[chosen, i, j] - without[chosen])
+
+
+@compiled
+def folded(first: Array, second: Array, sign: float, offset: float, out: Single) -> None:
+    """First + sign·second in degrees, plus an offset in degrees, within (−90, 90]; flat, radians in."""
+    for j in range(out.size):
+        angle = IN_DEGREES * (first[j] + sign * second[j]) + offset
+        angle = angle - 180.0 * np.ceil((angle - 90.0) / 180.0)
+        single = np.float32(angle)
+        out[j] = _QUARTER if single <= -_QUARTER else single
 
 
 @compiled

@@ -136,6 +136,27 @@ def climates(
     )
 
 
+def clear_zenith(
+    longitude: ArrayLike, latitude: ArrayLike, height_m: ArrayLike, *, frequencies_ghz: Sequence[float]
+) -> list[FloatArray]:
+    """Gas towards the zenith in clear air alone, dB, a frequency: `Climate.zenith_gas_clear` and no more.
+
+    Arguments and errors as in `climates`.
+    """
+    longitude, latitude, height_m = (
+        np.asarray(array, dtype=np.float64) for array in (longitude, latitude, height_m)
+    )
+    gases = [ZenithGas.at(float(frequency)) for frequency in frequencies_ghz]
+
+    def look_up(longitude: FloatArray, latitude: FloatArray, height_m: FloatArray) -> list[FloatArray]:
+        height = _height_km(longitude, latitude, height_m)
+        temperature = maps.surface_temperature(longitude, latitude)
+        vapour = maps.water_vapour(longitude, latitude, height, percentages=(CLEAR_PERCENTAGE,))
+        return [gas.attenuation(height, temperature, vapour)[0] for gas in gases]
+
+    return list(in_strips(look_up, (longitude, latitude, height_m)))
+
+
 def held_percentage(percentage: float) -> float:
     """Percentage of an average year at which gas and cloud are taken: P.618-14 §2.5, eq. (66)-(67).
 
