@@ -8,6 +8,7 @@ nothing of the package's own reasoning.
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -20,6 +21,7 @@ from geoskew.fieldwork.reports.evidence import Accuracy, Evidence, mean_setting,
 from geoskew.fieldwork.reports.hypotheses import STATES, branches
 from geoskew.fieldwork.reports.judge import FALSE_SHARE, Chunk, Judged, judge
 from geoskew.fieldwork.reports.posterior import Reasoning
+from geoskew.fieldwork.reports.scatter import with_observed_spread
 
 SLOTS = slots_of(1)
 FAULTS = [name for name in COUNTS if name != "done"]
@@ -204,3 +206,29 @@ def test_settings_are_averaged_across_ninety_degrees() -> None:
     mean, sigma = mean_setting([(89.0, 0.5), (-89.0, 0.5)])
     assert abs(mean) == pytest.approx(90.0)
     assert sigma == pytest.approx(0.5 / np.sqrt(2.0))
+
+
+def test_the_spread_is_learned_from_many_measured_settings_and_never_raised() -> None:
+    field = Field(np.random.default_rng(8), COUNTS, after=False, measured=0.5)
+    stated = replace(field.plan, spread=np.full(field.kind.size, 3.0))
+    learned, spread = with_observed_spread(stated, field.evidence)
+    # 113 settings, of which an eighth are faulty, scatter by 1°; the estimate is on the safe side of it.
+    assert 0.9 < spread < 1.6
+    assert (learned.spread == spread).all()
+    few = Field(np.random.default_rng(8), {"done": 40}, after=False, measured=0.5)
+    assert np.isnan(with_observed_spread(few.plan, few.evidence)[1])
+    tight = replace(field.plan, spread=np.full(field.kind.size, 0.4))
+    assert with_observed_spread(tight, field.evidence)[0] is tight
+
+
+def test_a_stated_spread_that_is_too_wide_does_no_harm_where_settings_were_measured() -> None:
+    found, accused = [], []
+    for seed in range(4):
+        field = Field(np.random.default_rng(seed), COUNTS, after=False, measured=0.5)
+        stated = replace(field.plan, spread=np.full(field.kind.size, 3.0))
+        field.plan = with_observed_spread(stated, field.evidence)[0]
+        one, rows = judged(field), field.evidence.measured
+        found.append(one.accused[rows & (field.kind != "done")])
+        accused.append(one.accused[rows & (field.kind == "done")])
+    assert np.concatenate(found).mean() >= 0.95
+    assert np.concatenate(accused).mean() <= FALSE_SHARE

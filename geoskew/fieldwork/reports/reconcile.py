@@ -14,6 +14,7 @@ from geoskew.fieldwork.reports.evidence import Accuracy, Array, Evidence, Meter,
 from geoskew.fieldwork.reports.hypotheses import AIM_LOSSES_DB, NAMES, Plan
 from geoskew.fieldwork.reports.judge import CONTRADICTED, NOT_REPORTED, Chunk, Judged, judge
 from geoskew.fieldwork.reports.rounds import Round
+from geoskew.fieldwork.reports.scatter import with_observed_spread
 
 # Sites reasoned about at once: their grids fit into the processor's cache.
 CHUNK: Final = 250
@@ -77,6 +78,8 @@ class Reconciled:
         Pointing loss of a dish out of aim, dB; 0 for all others.
     thresholds : list of tuple
         Of each round: chance of a fault above which sites without and with a measured setting are accused.
+    spreads : list of float
+        Of each round: the spread that measured settings show, degrees; NaN where the stated one holds.
     """
 
     state: NDArray[Any]
@@ -88,6 +91,7 @@ class Reconciled:
     lost: Array
     reported: NDArray[np.bool_]
     thresholds: list[tuple[float, float]]
+    spreads: list[float]
 
 
 MeterOf = Callable[[NDArray[np.intp]], Meter]
@@ -120,9 +124,10 @@ def reconcile(
         lost=np.zeros(size),
         reported=np.zeros(size, dtype=np.bool_),
         thresholds=[],
+        spreads=[],
     )
     for one in rounds:
-        plan = orders.plan(one, result.setting, result.error)
+        plan, spread = with_observed_spread(orders.plan(one, result.setting, result.error), one.evidence)
         usable = np.isfinite(plan.present) & np.isfinite(plan.target) & ~one.contradicted
         _note(result, one, usable)
         rows = np.flatnonzero(usable)
@@ -132,6 +137,7 @@ def reconcile(
             Chunk(_rows(plan, part), _evidence(one.evidence, part), meter_of(one.sites[part]))
             for part in np.array_split(rows, -(-rows.size // CHUNK))
         ]
+        result.spreads.append(spread)
         _take(result, one.sites[rows], judge(chunks, slots, accuracy))
     return result
 

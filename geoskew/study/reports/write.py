@@ -10,6 +10,8 @@ from datetime import timedelta
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Final
 
+import numpy as np
+
 from geoskew.fieldwork.reports import (
     STATES,
     Accuracy,
@@ -167,6 +169,12 @@ def _remarks(gathered: Gathered, found: Reconciled) -> list[str]:
             f"visit {number}: accused above a chance of a fault of {100 * alone:.0f} % by signals alone, "
             f"{100 * measured:.0f} % with a measured setting, so that at most 2 % of good sites are"
         )
+    remarks += [
+        f"visit {number}: the measured settings scatter by {spread:.1f}°, which is taken where the stated "
+        "spread of a site is wider"
+        for number, spread in enumerate(found.spreads, start=1)
+        if np.isfinite(spread)
+    ]
     return remarks
 
 
@@ -212,6 +220,7 @@ def _write_facts(study: Study, found: Reconciled, outcome: Outcome, folder: Path
             {"signals_alone": round(alone, 4), "setting_measured": round(measured, 4)}
             for alone, measured in found.thresholds
         ],
+        "observed_spread_deg": [None if np.isnan(one) else round(one, 3) for one in found.spreads],
         "chances_beforehand": {
             one.name: {"after_a_visit": one.after_visit, "without": one.without_visit} for one in STATES
         },
