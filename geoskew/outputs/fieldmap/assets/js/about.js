@@ -12,7 +12,7 @@
         fm.element("h3", {}, "Who may have it"),
         fm.element("p", {}, sites ? `This file carries the coordinates of ${sites} ${sites === 1 ? "site" : "sites"} and everything else that its list holds. Pass it on only to those who may know them.` : "This file carries no sites."),
         meta.privacy ? fm.element("p", {}, meta.privacy) : null,
-        fm.element("p", {}, "It asks the network for nothing. Filters, layer and view stand in the address, so a copied address opens the same view of the same file."),
+        fm.element("p", {}, `It asks the network for nothing${meta.tiles ? ", unless the online background is switched on" : ""}. Filters, layer and view stand in the address, so a copied address opens the same view of the same file.`),
         sites ? fm.element("div", { class: "row" }, fm.button("Save all reports as a file", fm.saveReports), fm.button("Clear ticks and readings", confirmClear)) : null),
       meta.cautions.length ? fm.element("section", { class: "part" }, fm.element("h3", {}, "To mind"), fm.element("ul", {}, meta.cautions.map((line) => fm.element("li", {}, line)))) : null,
       fm.element("section", { class: "part" }, fm.button("Print the map as it is shown", fm.printWhole)),

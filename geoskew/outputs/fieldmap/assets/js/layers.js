@@ -88,6 +88,9 @@
     if (marks.length) {
       parts.push(fm.element("ul", { class: "key-marks" }, marks.map((kind) => fm.element("li", {}, fm.shapeElement(kind, 18), kind.name))));
     }
+    if (marks.length && fm.marks && fm.marks.thinned) {
+      parts.push(fm.element("p", { class: "key-note" }, "Where sites crowd, the gravest stands for all."));
+    }
     if (parts.length === 0) {
       box.replaceChildren();
       return;

@@ -4,7 +4,8 @@
   const AT_ONCE = 100;
   let order = [];
   let limit = AT_ONCE;
-  let sorting = { key: "name", down: false };
+  // At first the order of the list that the map was made from: it costs nothing, and its maker chose it.
+  let sorting = { key: "", down: false };
   let body = null;
   let more = null;
   let summary = null;
@@ -110,12 +111,14 @@
     }
     order = [];
     for (let i = 0; i < sites.count; i++) if (choice.shown[i]) order.push(i);
-    const column = columns.find((entry) => entry.key === sorting.key) || columns[0];
-    const sign = sorting.down ? -1 : 1;
-    const missing = column.missing || (() => false);
-    order.sort((a, b) => missing(a) - missing(b) || sign * column.compare(a, b) || a - b);
+    const column = columns.find((entry) => entry.key === sorting.key);
+    if (column) {
+      const sign = sorting.down ? -1 : 1;
+      const missing = column.missing || (() => false);
+      order.sort((a, b) => missing(a) - missing(b) || sign * column.compare(a, b) || a - b);
+    }
     for (const cell of document.querySelectorAll("#sites th")) {
-      const chosen = cell.dataset.key === column.key;
+      const chosen = cell.dataset.key === sorting.key;
       cell.setAttribute("aria-sort", chosen ? (sorting.down ? "descending" : "ascending") : "none");
     }
     summary.textContent = `${choice.total} of ${sites.count} sites shown`;

@@ -64,6 +64,7 @@
     fm.when("theme", () => { fm.redrawGround(); fm.redrawLines(); fm.redrawMarks(); });
     fm.when("choice", () => { fm.redrawMarks(); fm.redrawLines(); fm.drawKey(); });
     fm.when("place", () => fm.redrawMarks());
+    fm.when("thinned", () => fm.drawKey());
   }
 
   fm.open = async function (i, { focus, stay }) {
@@ -118,11 +119,13 @@
   fm.read = function (latlng) {
     const box = fm.byId("reading");
     const picture = fm.shownPicture();
-    box.hidden = picture === null;
-    if (picture === null) return;
     const at = latlng || fm.map.getCenter();
-    const value = picture.valueAt(fm.worldX(at.lng), fm.worldY(at.lat));
-    fm.replace(box, fm.element("b", {}, fm.layerValue(picture.record, value)), fm.element("span", {}, `${latlng ? "" : "middle: "}${fm.coordinates(at.lat, at.lng, 3)}`));
+    const [x, y] = [fm.worldX(at.lng), fm.worldY(at.lat)];
+    const i = latlng ? fm.marks.nearest(x, y, 256 * 2 ** fm.map.getZoom(), 10) : -1;
+    const value = picture ? fm.element("b", {}, fm.layerValue(picture.record, picture.valueAt(x, y))) : null;
+    const where = i >= 0 ? fm.shortened(fm.siteTitle(i), 40) : `${latlng ? "" : "middle: "}${fm.coordinates(at.lat, at.lng, 3)}`;
+    fm.replace(box, value, fm.element("span", {}, where));
+    box.hidden = false;
     fm.byId("chart").classList.toggle("middle", !latlng);
   };
 
@@ -157,7 +160,7 @@
     key.className = "paper-key";
     const picture = fm.shownPicture();
     fm.drawKey();
-    for (const node of fm.byId("key").querySelectorAll("details > :not(summary)")) key.append(copyOf(node));
+    for (const node of fm.byId("key").querySelectorAll("details > :not(summary)")) key.append(node.cloneNode(true));
     const counts = fm.meta.classes.map((kind) => `${kind.name} ${fm.choice.counts.get(kind.code) || 0}`).join(" · ");
     fm.replace(
       fm.byId("paper"),
@@ -175,14 +178,6 @@
     await document.querySelector("#paper img").decode();
     window.print();
   };
-
-  // A canvas does not take its picture along when it is cloned.
-  function copyOf(node) {
-    const copy = node.cloneNode(true);
-    const [from, to] = [node.querySelectorAll("canvas"), copy.querySelectorAll("canvas")];
-    from.forEach((canvas, at) => to[at].getContext("2d").drawImage(canvas, 0, 0));
-    return copy;
-  }
 
   async function start() {
     const meta = (fm.meta = fm.readMeta());

@@ -3,62 +3,51 @@
 (function (fm) {
   const REACH = 22; // half of a 44 px target
   const CELL = 6; // when marks are closer than this, the one with the gravest action stands for all
+  const RADII = [4.6, 6, 7.8, 3.2];
+  const SMALL = 3; // the size of all marks in a crowd
+  const CROWD = 1200;
 
+  // Outlines about the middle, for a radius; the same for the map and for lists.
+  const round = (value) => Math.round(value * 100) / 100;
+  const polygon = (points) => "M" + points.map((point) => point.map(round).join(",")).join("L") + "Z";
+  const circle = (r) => `M${r},0A${r},${r} 0 1 1 ${-r},0A${r},${r} 0 1 1 ${r},0Z`;
+  const box = (x, y) => polygon([[-x, -y], [x, -y], [x, y], [-x, y]]);
   const SHAPES = {
-    dot(pen, r) {
-      pen.arc(0, 0, r, 0, 2 * Math.PI);
-    },
-    square(pen, r) {
-      pen.rect(-r * 0.88, -r * 0.88, r * 1.76, r * 1.76);
-    },
-    triangle(pen, r) {
-      pen.moveTo(0, -r * 1.15);
-      pen.lineTo(r * 1.1, r * 0.85);
-      pen.lineTo(-r * 1.1, r * 0.85);
-      pen.closePath();
-    },
-    diamond(pen, r) {
-      pen.moveTo(0, -r * 1.25);
-      pen.lineTo(r * 1.25, 0);
-      pen.lineTo(0, r * 1.25);
-      pen.lineTo(-r * 1.25, 0);
-      pen.closePath();
-    },
-    cross(pen, r) {
+    dot: (r) => circle(round(r)),
+    square: (r) => box(r * 0.88, r * 0.88),
+    triangle: (r) => polygon([[0, -r * 1.15], [r * 1.1, r * 0.85], [-r * 1.1, r * 0.85]]),
+    diamond: (r) => polygon([[0, -r * 1.25], [r * 1.25, 0], [0, r * 1.25], [-r * 1.25, 0]]),
+    cross(r) {
       const [a, b] = [r * 0.42, r * 1.15];
-      const corners = [[-a, -b], [a, -b], [a, -a], [b, -a], [b, a], [a, a], [a, b], [-a, b], [-a, a], [-b, a], [-b, -a], [-a, -a]];
-      corners.forEach(([x, y], i) => (i ? pen.lineTo(x, y) : pen.moveTo(x, y)));
-      pen.closePath();
+      return polygon([[-a, -b], [a, -b], [a, -a], [b, -a], [b, a], [a, a], [a, b], [-a, b], [-a, a], [-b, a], [-b, -a], [-a, -a]]);
     },
-    bar(pen, r) {
-      pen.rect(-r * 1.3, -r * 0.5, r * 2.6, r);
-    },
-    ring(pen, r) {
-      pen.arc(0, 0, r * 0.8, 0, 2 * Math.PI);
-    },
+    bar: (r) => box(r * 1.3, r * 0.5),
+    ring: (r) => circle(round(r * 0.8)),
   };
 
+  // Dark line, light halo: seen on any colour below.
   fm.drawShape = function (pen, shape, colour, r) {
-    pen.beginPath();
-    SHAPES[shape](pen, r);
+    const outline = new Path2D(SHAPES[shape](r));
     pen.lineJoin = "round";
-    pen.lineWidth = r < 6 ? 2.4 : 3;
+    pen.lineWidth = r < 4 ? 1.6 : r < 6 ? 2.4 : 3;
     pen.strokeStyle = "#ffffff";
-    pen.stroke();
+    pen.stroke(outline);
     pen.fillStyle = colour;
-    pen.fill();
-    pen.lineWidth = 1;
+    pen.fill(outline);
+    pen.lineWidth = r < 4 ? 0.6 : 1;
     pen.strokeStyle = "#15191c";
-    pen.stroke();
+    pen.stroke(outline);
   };
 
   // The same shape as an element, for lists and keys.
   fm.shapeElement = function (kind, size) {
-    const canvas = fm.element("canvas", { class: "shape", "aria-hidden": "true", width: size * 2, height: size * 2 });
-    const pen = canvas.getContext("2d");
-    pen.setTransform(2, 0, 0, 2, size, size);
-    fm.drawShape(pen, kind.shape, kind.colour, size * 0.32);
-    return canvas;
+    const d = SHAPES[kind.shape](size * 0.32);
+    const half = size / 2;
+    return fm.svg(
+      "svg", { class: "shape", "aria-hidden": "true", width: size, height: size, viewBox: `${-half} ${-half} ${size} ${size}` },
+      fm.svg("path", { d, fill: "none", stroke: "#ffffff", "stroke-width": 3, "stroke-linejoin": "round" }),
+      fm.svg("path", { d, fill: kind.colour, stroke: "#15191c", "stroke-linejoin": "round" })
+    );
   };
 
   fm.noAction = { code: 255, name: "no action", colour: "#9a9a94", shape: "ring" };
@@ -70,7 +59,7 @@
       this.x = Float64Array.from(sites.longitude, (longitude) => fm.worldX(fm.nearMiddle(longitude)));
       this.y = Float64Array.from(sites.latitude, (latitude) => fm.worldY(latitude));
       this.chosen = -1;
-      this.drawn = 0;
+      this.thinned = false;
       this.within = 0;
       this.sprites = new Map();
       this.size = sizesByWeight(sites.weight, sites.count);
@@ -83,7 +72,7 @@
     sprite(code, size, density) {
       const key = code + ":" + size + ":" + density;
       if (!this.sprites.has(key)) {
-        const r = [4.6, 6, 7.8][size];
+        const r = RADII[size];
         const half = Math.ceil(r * 1.3 + 3);
         const canvas = document.createElement("canvas");
         canvas.width = canvas.height = 2 * half * density;
@@ -118,9 +107,14 @@
 
     draw(pen, view) {
       const picked = this.pick(view);
-      this.drawn = picked.length;
+      const crowded = picked.length > CROWD;
+      const thinned = this.within > picked.length;
+      if (thinned !== this.thinned) {
+        this.thinned = thinned;
+        fm.tell("thinned");
+      }
       for (const i of picked) {
-        const { canvas, half } = this.sprite(this.sites.action[i], this.size[i], view.density);
+        const { canvas, half } = this.sprite(this.sites.action[i], crowded ? SMALL : this.size[i], view.density);
         const x = this.x[i] * view.scale - view.left;
         const y = this.y[i] * view.scale - view.top;
         pen.drawImage(canvas, x - half, y - half, 2 * half, 2 * half);
