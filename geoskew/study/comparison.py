@@ -136,7 +136,8 @@ def _sampled(path: Path, places: Places) -> NDArray[np.float64]:
                 x, y = from_geographic(source.crs.to_string()).transform(x, y)
             else:
                 x = source.bounds.left + np.mod(x - source.bounds.left, 360.0)
-            column, row = ~source.transform * (x, y)
+            step = source.transform
+            column, row = (x - step.c) / step.a, (y - step.f) / step.e
             inside = (column >= 0) & (column < source.width) & (row >= 0) & (row < source.height)
             if not inside.any():
                 return found

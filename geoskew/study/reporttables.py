@@ -164,7 +164,7 @@ def crew_table(planned: Planned) -> Grid:
             )
         )
     heads = ("crew", "visits", "days at work", "most a day", "km", "from, to")
-    return Grid("Load of the crews.", heads, tuple(rows), "lrrrrl", (28, 12, 14, 13, 13, 20))
+    return Grid("Load of the crews.", heads, tuple(rows), "lrrrrr", (28, 12, 14, 12, 12, 22))
 
 
 def worst_table(table: Any, suffix: str, count: int) -> Grid:
@@ -193,7 +193,7 @@ def worst_table(table: Any, suffix: str, count: int) -> Grid:
         "margin, the lesser margin of both moments at the shared setting, the margin of a realigned dish and "
         "feed, and the turn to the shared setting (clockwise positive, looking towards the satellite)."
     )
-    return Grid(caption, heads, tuple(rows), "llrrrr", (38, 18, 11, 10, 11, 12))
+    return Grid(caption, heads, tuple(rows), "llrrrr", (33, 16, 13, 11, 13, 14))
 
 
 def assumptions_list(scenario: Scenario, judged: str, notes: tuple[str, ...]) -> tuple[str, ...]:

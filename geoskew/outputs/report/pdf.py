@@ -37,6 +37,7 @@ class Page(FPDF):
         self.add_font("body", "", regular)
         self.add_font("body", "B", bold)
         self.set_margins(_LEFT, _TOP, _LEFT)
+        self.c_margin = 0.0  # text begins where rules and figures do
         self.set_auto_page_break(True, margin=_BOTTOM)
         self.set_title(drawable(report.title))
         self.set_creation_date(report.dated)  # the same input gives the same file
@@ -169,7 +170,7 @@ def _table(page: Page, grid: Grid, number: int) -> None:
         align="LEFT",
         text_align=aligns,
         line_height=_TABLE * 0.46,
-        padding=(0.4, 1.0, 0.4, 1.0),
+        padding=(0.4, 1.0, 0.4, 0.6),
         headings_style=FontFace(emphasis="BOLD"),
     ) as table:
         table.row([drawable(cell) for cell in grid.headings])
