@@ -19,6 +19,7 @@ from geoskew.cli import console, options
 @options.nodata
 @options.compress
 @options.workers
+@options.cluster
 @options.tiles
 @options.common
 def command(
@@ -30,6 +31,7 @@ def command(
     nodata: float | None,
     compress: str,
     workers: int | None,
+    cluster: str | None,
     tiles: str | None,
     quiet: bool,
     verbose: bool,
@@ -38,13 +40,13 @@ def command(
     """The whole job, everything that the scenario has inputs for, into one folder.
 
     Leaves layers/NAME.tif, contours.gpkg, sites.gpkg, sites.csv, rejected.csv, fieldmap.html,
-    cards.html and .pdf, visits.*, summary.json and columns.csv.
+    cards.html and .pdf, visits.*, report.html and .pdf, summary.json and columns.csv.
     """
     from geoskew.study.core import Study
     from geoskew.study.run import Settings
 
     study = Study(scenario, strict=strict)
-    settings = Settings(overwrite, precision, compress.upper(), nodata, workers, tiles)
+    settings = Settings(overwrite, precision, compress.upper(), nodata, workers, tiles, cluster)
     run_and_tell(study, out, settings, quiet=quiet, verbose=verbose)
 
 
