@@ -83,6 +83,24 @@ workers = click.option(
     metavar="N",
     help="Threads to compute with. [cores]",
 )
+
+
+def _address(context: click.Context, parameter: click.Parameter, value: str | None) -> str | None:
+    """Check the address before anything is read."""
+    if value is not None:
+        from geoskew.engine.cluster import require_address
+
+        require_address(value)
+    return value
+
+
+cluster = click.option(
+    "--cluster",
+    metavar="ADDRESS",
+    default=None,
+    callback=_address,
+    help="Compute the rasters on a dask cluster: its scheduler's address, or local:N for N processes here.",
+)
 to_database = click.option(
     "--to-database",
     is_flag=True,

@@ -21,6 +21,7 @@ from geoskew.cli import console, options
 @options.nodata
 @options.compress
 @options.workers
+@options.cluster
 @options.common
 def command(
     scenario: Path,
@@ -31,6 +32,7 @@ def command(
     nodata: float | None,
     compress: str,
     workers: int | None,
+    cluster: str | None,
     quiet: bool,
     verbose: bool,
     debug: bool,
@@ -50,6 +52,7 @@ def command(
             precision=precision,
             compress=compress.upper(),
             workers=workers,
+            cluster=cluster,
             overwrite=overwrite,
             report=report,
         )

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
+from contextlib import ExitStack
 from pathlib import Path
 from tempfile import TemporaryDirectory
 from typing import Literal
@@ -13,6 +14,7 @@ from geoskew.errors import InputError
 from geoskew.evaluate import chosen
 from geoskew.layers import REGISTRY
 from geoskew.outputs import contours, raster
+from geoskew.study.cluster import blocks_of_cluster
 from geoskew.study.core import Study
 from geoskew.study.foretold import bytes_of_rasters, require_room
 from geoskew.study.outfiles import folder_of_results, require_free
@@ -56,25 +58,34 @@ def write_study_rasters(
     precision: Literal["standard", "full"] = "standard",
     compress: str = "DEFLATE",
     workers: int | None = None,
+    cluster: str | None = None,
     overwrite: bool = False,
     report: Report | None = None,
 ) -> list[Path]:
-    """Compute layers block by block and write them into a folder."""
+    """Compute layers block by block, here or on a cluster, and write them into a folder."""
+    if cluster is not None and workers is not None:
+        raise InputError("--workers and --cluster exclude each other: --cluster local:N takes N processes")
     wanted = chosen(study.scenario, names, sites=False)
     study.read()
     grid, inputs = study.grid, study.inputs
     require_free(study, [folder / f"{name}.tif" for name in wanted], overwrite=overwrite)
     # Work files and results stand side by side until the last one is done.
     require_room(folder, 2.0 * bytes_of_rasters(grid.cells, wanted))
-    phases = {"cells": "computing cells", "files": "finishing GeoTIFFs"}
+    phases = {"cells": "computing cells", "tiles": "computing tiles", "files": "finishing GeoTIFFs"}
 
     def told(phase: str, done: int, total: int) -> None:
         if report is not None:
             report(phases.get(phase, phase), done, total)
 
-    with folder_of_results(folder):
+    with folder_of_results(folder), ExitStack() as stack:
+        if cluster is None:
+            blocks = computed_blocks(study.scenario, inputs, grid, wanted, workers=workers)
+        else:
+            blocks = stack.enter_context(
+                blocks_of_cluster(study, folder, wanted, where=cluster, precision=precision, report=told)
+            )
         return raster.write_rasters(
-            computed_blocks(study.scenario, inputs, grid, wanted, workers=workers),
+            blocks,
             grid=grid,
             layers=[REGISTRY[name] for name in wanted],
             folder=folder,

@@ -42,6 +42,7 @@ class Settings:
     nodata: float | None = None
     workers: int | None = None
     tiles: str | None = None
+    cluster: str | None = None
 
 
 @dataclass
@@ -134,6 +135,7 @@ def _rasters(
         precision=settings.precision,
         compress=settings.compress,
         workers=settings.workers,
+        cluster=settings.cluster,
         overwrite=settings.overwrite,
         report=report,
     )
