@@ -34,7 +34,7 @@
     if (open !== i) return;
     const number = (name) => (columns.has(name) && columns.get(name).facts.kind === "number" ? columns.get(name).read(i) : NaN);
     const card = fm.byId("card");
-    const parts = sections(i, number);
+    const parts = sections(i, number, reason(i, columns));
     fm.replace(card, header(i), parts.task, parts.turn, parts.margins, parts.directions, coordinates(i), aim(i, number), fm.notesSection(i), everything(i, columns), safety());
     card.hidden = false;
     fm.byId("roll").hidden = true;
@@ -74,12 +74,15 @@
     return lines.length ? fm.element("p", {}, lines.map((line) => fm.element("span", { class: "tag" }, line))) : null;
   }
 
-  function sections(i, number) {
+  // Why the action is what it is, where the table says so: it may name the port to take.
+  const reason = (i, columns) => (columns.has("action_reason") ? columns.get("action_reason").read(i) : "");
+
+  function sections(i, number, why) {
     const kind = fm.marks.kind(i);
     const layer = fm.turnLayer(kind.name);
     const turn = layer ? number(layer) : NaN;
     return {
-      task: fm.element("section", { class: "part task" }, fm.element("h3", {}, kind.name), fm.element("p", {}, fm.task(kind.name)), goal(kind, number)),
+      task: fm.element("section", { class: "part task" }, fm.element("h3", {}, kind.name), fm.element("p", {}, fm.task(kind.name)), goal(kind, number), why ? fm.element("p", { class: "quiet" }, `Why: ${why}.`) : null),
       turn: turnPart(turn, number),
       margins: marginPart(number),
       directions: directionPart(number),
@@ -204,7 +207,7 @@
   fm.printCard = async function (i) {
     const columns = await cells();
     const number = (name) => (columns.has(name) && columns.get(name).facts.kind === "number" ? columns.get(name).read(i) : NaN);
-    const parts = sections(i, number);
+    const parts = sections(i, number, reason(i, columns));
     const kind = fm.marks.kind(i);
     fm.replace(
       fm.byId("paper"),

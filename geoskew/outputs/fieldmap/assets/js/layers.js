@@ -56,6 +56,7 @@
     const picture = fm.shownPicture();
     if (picture) await picture.open();
     fm.redrawGround();
+    fm.tell("opened-picture");
   };
 
   function showTiles(on, meta) {

@@ -92,15 +92,16 @@
   }
 
   function heading() {
-    const cells = columns.map((column) => {
-      const node = fm.button(column.title, () => {
-        sorting = { key: column.key, down: sorting.key === column.key && !sorting.down };
-        limit = AT_ONCE;
-        update();
-      }, { class: "sorter" });
-      return fm.element("th", { scope: "col", class: column.number ? "number" : "", data: { key: column.key } }, node);
-    });
-    return fm.element("thead", {}, fm.element("tr", {}, cells));
+    const sorter = (column) => fm.button(column.title, () => {
+      sorting = { key: column.key, down: sorting.key === column.key && !sorting.down };
+      limit = AT_ONCE;
+      update();
+    }, { class: "sorter", data: { key: column.key } });
+    // The action stands below the name, so both sort from one heading.
+    const [name, action, ...numbers] = columns;
+    const first = fm.element("th", { scope: "col" }, sorter(name), sorter(action));
+    const cells = numbers.map((column) => fm.element("th", { scope: "col", class: "number" }, sorter(column)));
+    return fm.element("thead", {}, fm.element("tr", {}, first, cells));
   }
 
   function update() {
@@ -117,8 +118,10 @@
       const missing = column.missing || (() => false);
       order.sort((a, b) => missing(a) - missing(b) || sign * column.compare(a, b) || a - b);
     }
-    for (const cell of document.querySelectorAll("#sites th")) {
-      const chosen = cell.dataset.key === sorting.key;
+    for (const cell of document.querySelectorAll("#sites thead th")) {
+      const buttons = [...cell.querySelectorAll("button")];
+      for (const node of buttons) node.dataset.sorted = node.dataset.key === sorting.key ? (sorting.down ? "down" : "up") : "";
+      const chosen = buttons.some((node) => node.dataset.key === sorting.key);
       cell.setAttribute("aria-sort", chosen ? (sorting.down ? "descending" : "ascending") : "none");
     }
     summary.textContent = `${choice.total} of ${sites.count} sites shown`;
@@ -138,9 +141,11 @@
   }
 
   function row(i) {
-    const opener = fm.button(fm.shortened(fm.siteTitle(i), 60), () => fm.open(i, { focus: true }), { class: "opener" });
-    opener.prepend(fm.shapeElement(fm.marks.kind(i), 18));
-    const cells = columns.slice(1).map((column) => fm.element("td", { class: column.number ? "number" : "" }, column.text(i)));
+    const opener = fm.button("", () => fm.open(i, { focus: true }), { class: "opener" });
+    opener.append(fm.shapeElement(fm.marks.kind(i), 18), fm.element("span", {}, fm.shortened(fm.siteTitle(i), 60)));
+    const [, action] = columns;
+    opener.append(fm.element("small", {}, action.text(i)));
+    const cells = columns.slice(2).map((column) => fm.element("td", { class: "number" }, column.text(i)));
     return fm.element("tr", { data: { row: i } }, fm.element("th", { scope: "row" }, opener), cells);
   }
 

@@ -112,7 +112,7 @@
     });
     map.on("mouseout", () => { last = null; fm.read(null); });
     map.on("moveend", () => { fm.tell("moved"); if (last === null) fm.read(null); });
-    fm.when("picture", () => fm.read(last));
+    fm.when("opened-picture", () => fm.read(last));
   }
 
   // The value under the pointer; without one (a finger), at the middle of the map.

@@ -108,7 +108,7 @@
     draw(pen, view) {
       const picked = this.pick(view);
       const crowded = picked.length > CROWD;
-      const thinned = this.within > picked.length;
+      const thinned = this.within > 1.05 * picked.length;
       if (thinned !== this.thinned) {
         this.thinned = thinned;
         fm.tell("thinned");
@@ -119,7 +119,8 @@
         const y = this.y[i] * view.scale - view.top;
         pen.drawImage(canvas, x - half, y - half, 2 * half, 2 * half);
       }
-      if (picked.length <= 40) this.nameThem(pen, view, picked);
+      const near = view.scale >= 256 * 2 ** 8;
+      if (picked.length <= (near ? 40 : 14)) this.nameThem(pen, view, picked);
       if (this.chosen >= 0) this.halo(pen, view, this.chosen);
     }
 

@@ -15,7 +15,7 @@
   const FIELDS = [
     ["date", "Date", { type: "date" }],
     ["setting_scale", "Setting on the scale, °", { inputmode: "decimal" }],
-    ["setting_inclinometer", "Setting by inclinometer, °", { inputmode: "decimal" }],
+    ["setting_inclinometer", "Setting by inclinometer, ° (plus: leans right, seen from behind)", { inputmode: "decimal" }],
     ["quality_before", "Quality before, dB", { inputmode: "decimal" }],
     ["quality_after", "Quality after, dB", { inputmode: "decimal" }],
     ["note", "Note", { maxlength: "2000" }],
