@@ -169,9 +169,14 @@ def evaluate(array: Array, lattice: Lattice, x: Array, y: Array, *, degree: int)
 def _outer(array: Array, across: Array, along: Array, degree: int) -> Array:
     """Values on the product of a row and a column of positions, (H, W)."""
     matrices = []
-    for position, count in ((along, array.shape[0]), (across, array.shape[1])):
+    for axis, position in enumerate((along, across)):
         safe = np.nan_to_num(position)
+        count = array.shape[axis]
         matrix = line_basis(safe, count) if degree == 3 else _hat_basis(safe, count)
+        # A block of a large region touches few of the coefficients.
+        touched = slice(int(safe.min()), min(int(safe.max()) + degree + 2, count))
+        array = array[touched] if axis == 0 else array[:, touched]
+        matrix = matrix[:, touched]
         matrix[np.isnan(position)] = np.nan
         matrices.append(matrix)
     return np.asarray(matrices[0] @ array @ matrices[1].T)

@@ -2,6 +2,6 @@
 
 from __future__ import annotations
 
-from geoskew.engine.blocks import computed_blocks
+from geoskew.engine.blocks import computed_blocks, pending_blocks
 
-__all__ = ["computed_blocks"]
+__all__ = ["computed_blocks", "pending_blocks"]

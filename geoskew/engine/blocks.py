@@ -4,23 +4,47 @@ from __future__ import annotations
 
 import os
 from collections import deque
-from collections.abc import Iterator, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
-from typing import Any
+from functools import partial
+from typing import Any, Final
 
 from numpy.typing import NDArray
 
+from geoskew import kernels
 from geoskew.evaluate import evaluate
 from geoskew.region import Grid, Window
 from geoskew.scenario import Scenario
 from geoskew.situation import Inputs
 
-Block = tuple[Window, dict[str, NDArray[Any]]]
+Values = dict[str, NDArray[Any]]
+Block = tuple[Window, Values]
+
+# A grid of fewer cells is done by the time that the compiler would be.
+COMPILED_FROM_CELLS: Final = 10_000_000
 
 
-def compute_block(scenario: Scenario, inputs: Inputs, grid: Grid, window: Window, names: Sequence[str]) -> Block:
+def compute_block(
+    scenario: Scenario, inputs: Inputs, grid: Grid, window: Window, names: Sequence[str]
+) -> Block:
     """One block: the very function that every worker runs, on this machine or another one."""
-    return window, evaluate(scenario, grid.block(window), names, inputs=inputs)
+    return window, _values(scenario, inputs, grid, window, names)
+
+
+def _values(scenario: Scenario, inputs: Inputs, grid: Grid, window: Window, names: Sequence[str]) -> Values:
+    compiled = grid.cells >= COMPILED_FROM_CELLS and kernels.ready()
+    return evaluate(scenario, grid.block(window), names, inputs=inputs, compiled=compiled)
+
+
+def pending_blocks(
+    scenario: Scenario, inputs: Inputs, grid: Grid, names: Sequence[str]
+) -> Iterator[tuple[Window, Callable[[], Values]]]:
+    """All blocks of a grid in order, each as a function that computes its values where it is called.
+
+    For a consumer with workers of its own, so that one worker computes a block while another one stores one.
+    """
+    for window in grid.windows():
+        yield window, partial(_values, scenario, inputs, grid, window, names)
 
 
 def computed_blocks(

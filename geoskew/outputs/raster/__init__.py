@@ -7,6 +7,7 @@ values into what is stored, ``scratch.Scratch`` collects a layer's blocks in a t
 
 from __future__ import annotations
 
+import os
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from contextlib import ExitStack
 from logging import getLogger
@@ -34,7 +35,7 @@ _log = getLogger(__name__)
 
 
 def write_rasters(
-    blocks: Iterable[tuple[Window, Mapping[str, NDArray[Any]]]],
+    blocks: Iterable[tuple[Window, Mapping[str, NDArray[Any]] | Callable[[], Mapping[str, NDArray[Any]]]]],
     *,
     grid: Grid,
     layers: Sequence[Layer],
@@ -43,16 +44,17 @@ def write_rasters(
     nodata: float | None = None,
     precision: Precision = "standard",
     compress: str = "DEFLATE",
-    threads: int = 2,
+    workers: int | None = None,
     on_progress: Callable[[str, int, int], None] | None = None,
 ) -> list[Path]:
     """Write ``folder/NAME.tif`` for each layer; the files appear together at the end.
 
     Parameters
     ----------
-    blocks : iterable of (Window, mapping)
+    blocks : iterable of (Window, mapping) or (Window, callable)
         Windows aligned to 512 cells, each once, together the whole grid; arrays of the window's
-        shape by layer name: NaN = no value, classes uint8 with 255. Any order gives the same bytes.
+        shape by layer name: NaN = no value, classes uint8 with 255. Any order gives the same bytes. A
+        callable gives them when a worker has time for the block.
     grid : Grid
     layers : sequence of Layer
     folder : Path
@@ -64,8 +66,9 @@ def write_rasters(
     precision : "standard" or "full"
         Rounded to a power of two, or float32 as it is.
     compress : "DEFLATE" or "ZSTD"
-    threads : int
-        Threads that compress the final files; the bytes do not depend on it.
+    workers : int, optional
+        Blocks in flight, and files finished, at a time; all processors when left out. The bytes do not
+        depend on it.
     on_progress : callable, optional
         Called with the phase ("cells" or "files"), what is done and what there is in all.
 
@@ -80,22 +83,34 @@ def write_rasters(
     from rasterio._err import CPLE_BaseError
     from rasterio.errors import RasterioError
 
-    from geoskew.outputs.raster.finish import finish
+    from geoskew.outputs.raster import pipeline
 
+    workers = workers or os.cpu_count() or 1
     report = on_progress or (lambda phase, done, total: None)
     paths = [Path(folder) / f"{layer.name}.tif" for layer in layers]
     current = paths[0] if paths else Path(folder)
+
+    def failing(index: int) -> None:
+        nonlocal current
+        current = paths[index]
+
     try:
         with ExitStack() as stack, rasterio.Env(GDAL_CACHEMAX=CACHE_BYTES):
             parts = [stack.enter_context(files.writing(path)) for path in paths]
             stores = [_storage.storage_of(layer, precision=precision, nodata=nodata) for layer in layers]
             scratches = _open(stack, parts, layers, stores, grid, tags)
-            _fill(blocks, scratches, grid, report)
+            pipeline.fill(
+                blocks, scratches, workers=workers, report=lambda cells: report("cells", cells, grid.cells)
+            )
             _require_values(scratches)
-            for index, scratch in enumerate(scratches):
-                current = paths[index]
-                finish(scratch, parts[index], compress=compress, threads=threads)
-                report("files", index + 1, len(paths))
+            pipeline.finish_all(
+                scratches,
+                parts,
+                compress=compress,
+                workers=workers,
+                failing=failing,
+                report=lambda count: report("files", count, len(paths)),
+            )
     except GeoskewError:
         raise
     except (RasterioError, CPLE_BaseError, OSError) as error:
@@ -120,22 +135,6 @@ def _open(
         stack.callback(scratch.abandon)
         scratches.append(scratch)
     return scratches
-
-
-def _fill(
-    blocks: Iterable[tuple[Window, Mapping[str, NDArray[Any]]]],
-    scratches: Sequence[Scratch],
-    grid: Grid,
-    report: Callable[[str, int, int], None],
-) -> None:
-    """Encode and store every block of every layer."""
-    cells = 0
-    for window, values in blocks:
-        for scratch in scratches:
-            name = scratch.layer.name
-            scratch.write(window, _storage.encode(values[name], scratch.layer, scratch.storage))
-        cells += window.height * window.width
-        report("cells", cells, grid.rows * grid.columns)
 
 
 def _require_values(scratches: Sequence[Scratch]) -> None:

@@ -6,7 +6,7 @@ import math
 from pathlib import Path
 
 from geoskew.errors import InputError, OutputError
-from geoskew.outputs.raster.overviews import TILE, add_rounded
+from geoskew.outputs.raster.overviews import TILE
 from geoskew.outputs.raster.scratch import Block, Scratch, checksum
 
 _PREDICTORS = {1: "NO", 2: "STANDARD", 3: "FLOATING_POINT"}
@@ -28,23 +28,20 @@ def finish(scratch: Scratch, part: Path, *, compress: str = "DEFLATE", threads: 
     if compress not in _CODECS:
         raise InputError(f"compression {compress!r} is unknown; give one of {', '.join(_CODECS)}")
     scratch.close()
-    if scratch.storage.step and scratch.storage.overviews == "average":
-        add_rounded(scratch.path, scratch.storage)
     copy(
-        scratch.path,
+        scratch.joined(),
         part,
         driver="COG",
         compress=compress,
         predictor=_PREDICTORS[scratch.storage.predictor],
         blocksize=TILE,
-        overviews="AUTO",
-        overview_resampling=scratch.storage.overviews.upper(),
+        overviews="AUTO",  # those of the work files
         statistics="AUTO",  # the exact ones of the work file, where there are any
         bigtiff="IF_SAFER",
         num_threads=str(threads),
     )
     verify(part, scratch)
-    scratch.path.unlink()
+    scratch.remove()
 
 
 def verify(path: Path, scratch: Scratch) -> None:

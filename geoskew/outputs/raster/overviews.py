@@ -1,39 +1,24 @@
-"""Averaged overviews that are rounded like the cells they are made of.
+"""Overviews, made block by block from the values at hand instead of read back from a whole layer.
 
-An average of rounded values has all its low bits in use again, and three small overviews would take
-as much room as the layer itself. Overviews that pick one cell need nothing of this.
+Blocks are aligned to tiles, so that every cell of an overview is made of one block. Averages are rounded
+like the cells they are made of: an average of rounded values has all its low bits in use again, and three
+small overviews would take as much room as the layer itself.
 """
 
 from __future__ import annotations
 
 import math
-from pathlib import Path
+from collections.abc import Iterator
+from typing import Any, Final
 
 import numpy as np
+from numpy.typing import NDArray
 
 from geoskew.outputs.raster.storage import Storage
 
-TILE = 512
-
-
-def add_rounded(path: Path, storage: Storage) -> None:
-    """Give a closed work file averaged overviews, rounded to the storage's step.
-
-    Cells without a value take no part in an average. The copy to the final file keeps overviews that
-    are there.
-    """
-    import rasterio
-    from rasterio.enums import Resampling
-
-    with rasterio.open(path) as dataset:
-        factors = halvings(dataset.height, dataset.width)
-    if not factors:
-        return
-    with rasterio.Env(GDAL_TIFF_OVR_BLOCKSIZE=TILE), rasterio.open(path, "r+") as dataset:
-        dataset.build_overviews(factors, Resampling.average)
-    for level in range(len(factors)):
-        with rasterio.open(path, "r+", overview_level=level) as dataset:
-            _round(dataset, storage)
+TILE: Final = 512
+# The smallest tile that the file format has.
+_LEAST_TILE: Final = 16
 
 
 def halvings(rows: int, columns: int) -> list[int]:
@@ -50,11 +35,43 @@ def halvings(rows: int, columns: int) -> list[int]:
     return factors
 
 
-def _round(dataset: object, storage: Storage) -> None:
-    """Round an open dataset in place, tile by tile; nodata stays."""
-    step, nodata = np.float32(storage.step), np.float32(storage.nodata)
-    for _, window in dataset.block_windows(1):  # type: ignore[attr-defined]
-        values = dataset.read(1, window=window)  # type: ignore[attr-defined]
-        valid = ~np.isnan(values) & (values != nodata)
-        values[valid] = np.rint(values[valid] / step) * step + np.float32(0.0)
-        dataset.write(values, 1, window=window)  # type: ignore[attr-defined]
+def tile_of(factor: int) -> int:
+    """Side of the tiles of an overview's work file: what one tile of the layer becomes."""
+    return max(_LEAST_TILE, TILE // factor)
+
+
+def levels(encoded: NDArray[Any], storage: Storage, count: int) -> Iterator[NDArray[Any]]:
+    """The first `count` overviews of a block of encoded values, each half as large as the one before.
+
+    Cells without a value take no part in an average. A row or column without a partner stands for itself.
+    """
+    current = encoded
+    for _ in range(count):
+        if storage.overviews == "nearest":
+            current = np.ascontiguousarray(current[::2, ::2])
+            yield current
+        else:
+            current = _averaged(current)
+            yield _rounded(current, storage.step) if storage.step else current
+
+
+def _averaged(values: NDArray[np.float32]) -> NDArray[np.float32]:
+    rows, columns = values.shape
+    if rows % 2 or columns % 2:
+        values = np.pad(values, ((0, rows % 2), (0, columns % 2)), constant_values=np.nan)
+    four = (values[::2, ::2], values[::2, 1::2], values[1::2, ::2], values[1::2, 1::2])
+    total = np.asarray(four[0] + four[1] + (four[2] + four[3])) * np.float32(0.25)
+    missing = np.isnan(total)
+    if missing.any():
+        known = np.stack([one[missing] for one in four])
+        count = (~np.isnan(known)).sum(axis=0)
+        sums = np.where(np.isnan(known), np.float32(0.0), known).sum(axis=0, dtype=np.float64)
+        with np.errstate(invalid="ignore", divide="ignore"):
+            total[missing] = np.where(count > 0, sums / count, np.nan)
+    return total
+
+
+def _rounded(values: NDArray[np.float32], step: float) -> NDArray[np.float32]:
+    """Rounded to a power of two; one zero and one NaN."""
+    rounded = np.rint(values * np.float32(1.0 / step)) * np.float32(step) + np.float32(0.0)
+    return np.where(np.isnan(rounded), np.float32(np.nan), rounded)

@@ -1,4 +1,4 @@
-"""The work file of one layer: tiled, filled block by block in any order, with all its metadata."""
+"""The work files of one layer: tiled, filled block by block in any order, with all its metadata."""
 
 from __future__ import annotations
 
@@ -7,6 +7,7 @@ import zlib
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
+from threading import Lock
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -15,7 +16,7 @@ from numpy.typing import NDArray
 from geoskew import __version__
 from geoskew.errors import OutputError
 from geoskew.layers import Layer
-from geoskew.outputs.raster.overviews import TILE
+from geoskew.outputs.raster.overviews import TILE, halvings, levels, tile_of
 from geoskew.outputs.raster.storage import CLASS_NODATA, Storage, burn
 from geoskew.ramps import CLASS_COLOURS, FLAG_COLOURS
 
@@ -41,12 +42,15 @@ class Block:
     @classmethod
     def of(cls, window: Window, encoded: NDArray[Any], stored: NDArray[Any]) -> Block:
         """Measure a block; ``deviation`` is the sum of squared distances from its own mean."""
-        valid = encoded[encoded != CLASS_NODATA] if encoded.dtype == np.uint8 else encoded[~np.isnan(encoded)]
+        known = encoded != CLASS_NODATA if encoded.dtype == np.uint8 else encoded == encoded
+        valid = encoded if known.all() else encoded[known]
         place = (window.row, window.column, window.height, window.width, checksum(stored))
         if valid.size == 0:
             return cls(*place, 0, math.nan, math.nan, math.nan, 0.0)
         mean = float(valid.mean(dtype=np.float64))
-        deviation = float(np.square(valid - mean, dtype=np.float64).sum())
+        apart = valid.astype(np.float64).ravel()
+        apart -= mean
+        deviation = float((apart * apart).sum())
         return cls(*place, int(valid.size), float(valid.min()), float(valid.max()), mean, deviation)
 
 
@@ -64,35 +68,47 @@ class Scratch:
     def __init__(
         self, path: Path, *, grid: Grid, layer: Layer, storage: Storage, tags: Mapping[str, str]
     ) -> None:
-        import rasterio
-
         self.path = path
         self.grid = grid
         self.layer = layer
         self.storage = storage
         self.blocks: list[Block] = []
-        options: dict[str, Any] = {"photometric": "palette"} if layer.is_class else {}
-        self._dataset = rasterio.open(
+        self._lock = Lock()
+        self.factors = halvings(grid.rows, grid.columns)
+        self._dataset = self._open(path, 1)
+        self._levels = [self._open(self._level_path(factor), factor) for factor in self.factors]
+        self._describe(tags)
+
+    def _level_path(self, factor: int) -> Path:
+        return self.path.with_name(f"{self.path.stem}-{factor}.tif")
+
+    def _open(self, path: Path, factor: int) -> Any:
+        """A work file of the layer, or of its overview by a factor."""
+        import rasterio
+
+        grid, storage = self.grid, self.storage
+        transform = rasterio.Affine(*tuple(grid.transform)[:6]) @ rasterio.Affine.scale(factor)
+        options: dict[str, Any] = {"photometric": "palette"} if self.layer.is_class and factor == 1 else {}
+        return rasterio.open(
             path,
             "w",
             driver="GTiff",
-            width=grid.columns,
-            height=grid.rows,
+            width=math.ceil(grid.columns / factor),
+            height=math.ceil(grid.rows / factor),
             count=1,
             dtype=storage.dtype,
             crs=grid.crs,
-            transform=rasterio.Affine(*tuple(grid.transform)[:6]),
+            transform=transform,
             nodata=storage.nodata,
             tiled=True,
-            blockxsize=TILE,
-            blockysize=TILE,
+            blockxsize=tile_of(factor),
+            blockysize=tile_of(factor),
             compress="ZSTD",
             zstd_level=1,
             predictor=storage.predictor,
             bigtiff="IF_SAFER",
             **options,
         )
-        self._describe(tags)
 
     @property
     def has_values(self) -> bool:
@@ -107,17 +123,22 @@ class Scratch:
         OutputError
             The array is not of the window's shape.
         """
-        from rasterio.windows import Window as RasterWindow
-
         if encoded.shape != (window.height, window.width):
             raise OutputError(
                 f"layer {self.layer.name}: a block of {window.height} x {window.width} cells came with "
                 f"values of shape {encoded.shape}"
             )
         stored = burn(encoded, self.storage, self.layer)
-        place = RasterWindow(window.column, window.row, window.width, window.height)
-        self._dataset.write(stored, 1, window=place)
-        self.blocks.append(Block.of(window, encoded, stored))
+        block = Block.of(window, encoded, stored)
+        pieces = [
+            burn(one, self.storage, self.layer, checked=False)
+            for one in levels(encoded, self.storage, len(self.factors))
+        ]
+        with self._lock:
+            _put(self._dataset, window.row, window.column, stored)
+            for factor, dataset, piece in zip(self.factors, self._levels, pieces, strict=True):
+                _put(dataset, window.row // factor, window.column // factor, piece)
+            self.blocks.append(block)
 
     def close(self) -> None:
         """Check that every cell was stored once, add the statistics, close the file.
@@ -130,12 +151,34 @@ class Scratch:
         self.blocks.sort(key=lambda block: (block.row, block.column))
         _require_cover(self.blocks, self.grid.rows, self.grid.columns)
         self._dataset.update_tags(1, **statistics(self.blocks, self.grid.rows * self.grid.columns))
-        self._dataset.close()
+        for dataset in (self._dataset, *self._levels):
+            dataset.close()
 
     def abandon(self) -> None:
-        """Close the file if it is still open."""
-        if not self._dataset.closed:
-            self._dataset.close()
+        """Close the files that are still open."""
+        for dataset in (self._dataset, *self._levels):
+            if not dataset.closed:
+                dataset.close()
+
+    def joined(self) -> Path:
+        """Of the closed work files a description that reads as one layer with its overviews."""
+        from rasterio.shutil import copy
+
+        path = self.path.with_suffix(".vrt")
+        copy(self.path, path, driver="VRT")
+        overviews = "".join(
+            f'<Overview><SourceFilename relativeToVRT="1">{self._level_path(factor).name}</SourceFilename>'
+            "<SourceBand>1</SourceBand></Overview>"
+            for factor in self.factors
+        )
+        text = path.read_text(encoding="utf-8")
+        path.write_text(text.replace("</VRTRasterBand>", f"{overviews}</VRTRasterBand>"), encoding="utf-8")
+        return path
+
+    def remove(self) -> None:
+        """Remove the work files."""
+        for path in (self.path, self.path.with_suffix(".vrt"), *map(self._level_path, self.factors)):
+            path.unlink()
 
     def _describe(self, tags: Mapping[str, str]) -> None:
         """Set everything that must be in the work file before it is copied."""
@@ -146,6 +189,13 @@ class Scratch:
         dataset.update_tags(1, **band_tags(layer, self.storage))
         if layer.is_class:
             dataset.write_colormap(1, palette(layer))
+
+
+def _put(dataset: Any, row: int, column: int, values: NDArray[Any]) -> None:
+    from rasterio.windows import Window as RasterWindow
+
+    height, width = values.shape
+    dataset.write(values, 1, window=RasterWindow(column, row, width, height))
 
 
 def band_tags(layer: Layer, storage: Storage) -> dict[str, str]:

@@ -106,8 +106,10 @@ def _back_in_range(stored: NDArray[np.float32], values: NDArray[Any], period: fl
     return np.where((stored <= -half) & (values > -half), half, stored)
 
 
-def burn(encoded: NDArray[Any], storage: Storage, layer: Layer) -> NDArray[Any]:
+def burn(encoded: NDArray[Any], storage: Storage, layer: Layer, *, checked: bool = True) -> NDArray[Any]:
     """Encoded values with the declared nodata number in place of NaN.
+
+    Averages may meet that number by chance: for these `checked` is false.
 
     Raises
     ------
@@ -116,7 +118,7 @@ def burn(encoded: NDArray[Any], storage: Storage, layer: Layer) -> NDArray[Any]:
     """
     if storage.dtype == "uint8" or np.isnan(storage.nodata):
         return encoded
-    if (encoded == np.float32(storage.nodata)).any():
+    if checked and (encoded == np.float32(storage.nodata)).any():
         raise InputError(
             f"nodata {storage.nodata:g} is a value of layer {layer.name}; give a number that no layer takes, "
             "such as -9999"
