@@ -37,13 +37,15 @@ def port_remark(scenario: Scenario, ports: int) -> str:
     """What to say of ports where the new carriers' polarisation is not the old one's; empty: nothing."""
     remarks = []
     single = old_port(scenario.carriers_before)
+    # What holds for all sites stands in the scenario's notes.
+    if ports == 1 and scenario.terminal.ports != 1 and _port_is_switched(scenario):
+        remarks.append("one port: a switched port is assumed")
     for old, new in zip(scenario.carriers_before, scenario.carriers_after, strict=True):
         if is_linear(old) and is_linear(new):
-            if single is None or (new.polarisation == old.polarisation and new.polarisation == single):
+            if new.polarisation == old.polarisation:
                 continue
-            if ports == 2 or new.polarisation == single:
-                if new.polarisation != old.polarisation:
-                    remarks.append(f"{new.name}: take the {new.polarisation} port, no turn for it")
+            if ports == 2 or single is None:
+                remarks.append(f"{new.name}: take the {new.polarisation} port, no turn for it")
             else:
                 remarks.append(f"{new.name}: the {single} port takes {new.polarisation}, a quarter turn")
         elif is_linear(old) != is_linear(new):
@@ -53,10 +55,15 @@ def port_remark(scenario: Scenario, ports: int) -> str:
     return "".join(f"; {remark}" for remark in remarks)
 
 
+def _port_is_switched(scenario: Scenario) -> bool:
+    """Whether old carriers of both linear polarisations come through one port, if there is but one."""
+    before = scenario.carriers_before
+    return any(is_linear(one) for one in before) and old_port(before) is None
+
+
 def scenario_notes(scenario: Scenario) -> list[str]:
     """Assumptions that every output of a scenario must state."""
     notes = []
-    before = scenario.carriers_before
-    if any(is_linear(one) for one in before) and old_port(before) is None and scenario.terminal.ports == 1:
+    if _port_is_switched(scenario) and scenario.terminal.ports == 1:
         notes.append("carriers of both polarisations on one port: a switched port is assumed")
     return notes
