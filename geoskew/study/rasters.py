@@ -6,14 +6,15 @@ from collections.abc import Callable, Iterable, Sequence
 from contextlib import ExitStack
 from pathlib import Path
 from tempfile import TemporaryDirectory
-from typing import Literal
+from typing import Any, Literal
 
 from geoskew import __version__
-from geoskew.engine import computed_blocks
+from geoskew.engine import pending_blocks
 from geoskew.errors import InputError
 from geoskew.evaluate import chosen
 from geoskew.layers import REGISTRY
 from geoskew.outputs import contours, raster
+from geoskew.region import Window
 from geoskew.study.cluster import blocks_of_cluster
 from geoskew.study.core import Study
 from geoskew.study.foretold import bytes_of_rasters, require_room
@@ -78,8 +79,9 @@ def write_study_rasters(
             report(phases.get(phase, phase), done, total)
 
     with folder_of_results(folder), ExitStack() as stack:
+        blocks: Iterable[tuple[Window, Any]]
         if cluster is None:
-            blocks = computed_blocks(study.scenario, inputs, grid, wanted, workers=workers)
+            blocks = pending_blocks(study.scenario, inputs, grid, wanted)
         else:
             blocks = stack.enter_context(
                 blocks_of_cluster(study, folder, wanted, where=cluster, precision=precision, report=told)
@@ -93,6 +95,7 @@ def write_study_rasters(
             nodata=nodata,
             precision=precision,
             compress=compress,
+            workers=workers,
             on_progress=told,
         )
 
