@@ -121,7 +121,7 @@ def _in_short(study: Study, planned: Planned | None, rows: list[dict[str, Any]] 
         f"changeover, {counts['upgrade']} need better equipment, {counts['no-sight']} do not see it.",
         f"If nothing were done, {lost} sites would lose the signal under the conditions that decide.",
     ]
-    if planned is not None:
+    if planned is not None and len(planned.plan.visits) + len(planned.plan.unreached):
         plan = planned.plan
         line = f"The crews make {len(plan.visits)} visits on {len(plan.days)} crew days, {plan.km:,.0f} km"
         missing = f"; {plan.missing_crew_days} crew days are missing" if plan.missing_crew_days else ""
@@ -175,9 +175,10 @@ def _figures(study: Study, canvas: Canvas) -> list[Block]:
     shared = np.minimum(values[f"margin_shared_before{suffix}"], values[f"margin_shared_after{suffix}"])
     action = REGISTRY["action"]
     shown = canvas.field(action, values["action"]) if scenario.region is not None else None
+    parts = ["areas for the default terminal"] if shown else []
+    what = ", ".join(parts + (["each site with its own equipment"] if marks else []))
     first = MapFigure(
-        "What is to be done: areas for the default terminal, each site with its own equipment. "
-        f"Unit: none (classes of Table 2). {source}",
+        f"What is to be done: {what}. Unit: none (classes of Table 2). {source}",
         "Map of the actions by area and site",
         canvas.base,
         shown,
