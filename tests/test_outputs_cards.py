@@ -16,6 +16,7 @@ import numpy as np
 import pandas as pd
 import pytest
 from pypdf import PdfReader
+from scenes import at, scenario
 
 from geoskew.errors import OutputError
 from geoskew.outputs.cards import CardFacts, CarrierLine, write_cards
@@ -286,6 +287,49 @@ def test_scale_readings_follow_zero_and_sense(tmp_path: Path) -> None:
     assert article.fields["nearest_mark"] == pytest.approx([-10.0])
     assert sense_of_scale("sideways") is None
     assert Scale(5.0, zero=10.0, sense=-1).reading(30.0) == -20.0
+
+
+@pytest.mark.parametrize("columns", [{}, {"setting_deg": 12.3}, {"scale_zero_deg": 3.1}])
+def test_nearest_mark_is_the_one_whose_margins_are_printed(tmp_path: Path, columns: dict[str, float]) -> None:
+    # A feed left on the mark that the card names has the margins that the card prints beside it.
+    scene = scenario(terminal={"scale_step_deg": 5.0})
+    names = ("skew_before", "turn_shared", "setting_shared", "window_low", "window_high")
+    marked = ("margin_marked_before", "margin_marked_after")
+    site = {name: float(value) for name, value in at(scene, -34.6, -58.4, *names, *marked, **columns).items()}
+    article = card(tmp_path, row(**site, **columns))
+    (shown,) = article.fields["nearest_mark"]
+    left = at(
+        scene, -34.6, -58.4, "margin_before", "margin_untouched",
+        setting_deg=shown + columns.get("scale_zero_deg", 0.0),
+    )  # fmt: skip
+    assert left["margin_before"] == pytest.approx(article.fields[marked[0]][0])
+    assert left["margin_untouched"] == pytest.approx(article.fields[marked[1]][0])
+
+
+@pytest.mark.parametrize("turn", [90.0, 88.5, -89.0])
+def test_near_a_quarter_turn_no_setting_is_called_the_wrong_way(tmp_path: Path, turn: float) -> None:
+    # Turned the other way round the feed's axis ends where it should: nothing there is wrong.
+    article = card(tmp_path, row(action="turn-at-changeover", skew_before=10.0, turn_realigned=turn))
+    assert "WRONG WAY" not in article.text
+    assert "margin_wrong_way" not in article.fields
+    assert abs(article.fields["other_way_round"][0]) == pytest.approx(180.0 - 2.0 * abs(turn))
+    assert not [shape for shape in article.shapes if shape[1].endswith(".wrong")]
+    assert "WRONG WAY" in card(tmp_path, row(action="turn-at-changeover", turn_realigned=80.0)).text
+
+
+def test_a_mark_past_level_is_said_to_point_down(tmp_path: Path) -> None:
+    # 70° right, 40° clockwise: the marked end stands at 110°, below level; its axis leans 70° to the left.
+    words = " ".join(card(tmp_path, row(skew_before=70.0, turn_shared=40.0)).text.split())
+    assert "must stand 70.0° to the LEFT of upright seen from BEHIND" in words
+    assert "seen from IN FRONT (marked end DOWN)." in words
+    assert "marked end" not in card(tmp_path, row()).text
+
+
+def test_dish_is_moved_to_a_satellite_that_differs_in_latitude_alone(tmp_path: Path) -> None:
+    site = row(action="turn-at-changeover", azimuth_after=4.5, elevation_after=50.5)
+    assert "The dish stays where it is" in card(tmp_path, site).text
+    inclined = CardFacts(**_as_dict(FACTS) | {"incoming_latitude_deg": 1.0})
+    assert "Move the DISH to the new satellite" in card(tmp_path, site, inclined).text
 
 
 NO_SLACK = (0.0, 0.0)

@@ -41,6 +41,8 @@ def card_facts(study: Study) -> CardFacts:
         incoming=scenario.incoming.name,
         outgoing_longitude_deg=scenario.outgoing.longitude_deg,
         incoming_longitude_deg=scenario.incoming.longitude_deg,
+        outgoing_latitude_deg=scenario.outgoing.latitude_deg,
+        incoming_latitude_deg=scenario.incoming.latitude_deg,
         carriers_before=_carriers(scenario, "before"),
         carriers_after=_carriers(scenario, "after"),
         judged_in="rain" if scenario.judged_in == "rain" else "clear",

@@ -12,6 +12,8 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import Final, Literal
 
+from geoskew.outputs.cards.words import comes_to_the_same
+
 Ink = Literal["ring", "tick", "plumb", "present", "target", "turn", "tolerance", "wrong", "stop"]
 
 HALF_SIZE: Final = 140.0
@@ -128,7 +130,7 @@ def _stops(dial: Dial) -> Iterator[Mark]:
 
 
 def _wrong_side(dial: Dial) -> Iterator[Mark]:
-    if abs(dial.turn) < 0.05:
+    if abs(dial.turn) < 0.05 or comes_to_the_same(dial.turn):
         return
     away = -math.copysign(1.0, dial.turn)
     start, end = dial.present + away * 2.0, dial.present + away * _FORBIDDEN_SPAN

@@ -38,6 +38,8 @@ class CardFacts:
         Names of the two satellites.
     outgoing_longitude_deg, incoming_longitude_deg : float
         Their slots, degrees east.
+    outgoing_latitude_deg, incoming_latitude_deg : float
+        Their sub-satellite latitudes, degrees north.
     carriers_before, carriers_after : tuple of CarrierLine
         Paired by position.
     judged_in : {"clear", "rain"}
@@ -69,12 +71,15 @@ class CardFacts:
     availability_percent: float | None = None
     terminal: Mapping[str, float | int | bool | str | None] = field(default_factory=dict)
     edition: str = ""
+    outgoing_latitude_deg: float = 0.0
+    incoming_latitude_deg: float = 0.0
 
     @property
     def same_slot(self) -> bool:
-        """Whether the dish need not be moved: both satellites stand at one longitude."""
-        gap = (self.incoming_longitude_deg - self.outgoing_longitude_deg + 180.0) % 360.0 - 180.0
-        return abs(gap) < 1e-6
+        """Whether the dish need not be moved: both satellites stand at one place on the orbit."""
+        along = (self.incoming_longitude_deg - self.outgoing_longitude_deg + 180.0) % 360.0 - 180.0
+        across = self.incoming_latitude_deg - self.outgoing_latitude_deg
+        return max(abs(along), abs(across)) < 1e-6
 
     @property
     def judged(self) -> str:

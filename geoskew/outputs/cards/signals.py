@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 
 from geoskew.outputs.cards.facts import CardFacts, CarrierLine
-from geoskew.outputs.cards.words import Line, Number, Row, decibels, fold, minus
+from geoskew.outputs.cards.words import Line, Number, Row, comes_to_the_same, decibels, fold, minus
 
 
 @dataclass(frozen=True, slots=True)
@@ -42,13 +42,14 @@ def signals(
         Whether the crew makes exactly this turn; else the figures of a wrong-way turn do not apply.
     """
     before, after = facts.carriers_before, facts.carriers_after
+    wrong_way_shows = direct and not comes_to_the_same(turn)
     rows = [_signal(row, "Now, nothing touched", "margin_before", before)]
     if action == "preset":
         rows += [
             _signal(row, "After your turn, before the changeover", "margin_shared_before", before),
             _signal(row, "After your turn, after the changeover", "margin_shared_after", after),
         ]
-        if direct:
+        if wrong_way_shows:
             wrong = "WRONG WAY, after the changeover"
             rows.append(_signal(row, wrong, "margin_reversed", after, bad=True))
         rows.append(_signal(row, "Not visited, after the changeover", "margin_untouched", after))
@@ -57,9 +58,9 @@ def signals(
             _signal(row, "After the changeover, before your turn", "margin_untouched", after),
             _signal(row, "After the changeover and your turn", "margin_realigned", after),
         ]
-        if direct:
+        if wrong_way_shows:
             rows.append(_signal(row, "WRONG WAY, after the changeover", "margin_wrong_way", after, bad=True))
-    notes = _notes(row, action, turn) if direct and abs(turn) >= 0.05 else []
+    notes = _notes(row, action, turn) if wrong_way_shows and abs(turn) >= 0.05 else []
     return tuple(entry for entry in rows if entry.margin), tuple(notes)
 
 

@@ -15,6 +15,7 @@ from geoskew.outputs.cards.words import (
     Line,
     Number,
     Part,
+    comes_to_the_same,
     decibels,
     degrees,
     fold,
@@ -65,14 +66,19 @@ def steps(job: Job, facts: CardFacts) -> tuple[Line, ...]:
         lines.append(_move_dish(job, facts))
     else:
         lines.append(("Tighten the clamp. The dish stays where it is: do not move azimuth or elevation.",))
-    lines.append(("Read the signal, compare it with the figures below, fill in what to write back.",))
+    lines.append(
+        ("Compare the signal with the figures below; write back (inclinometer: + is RIGHT from BEHIND).",)
+    )
     return tuple(lines)
 
 
 def _before_touching(job: Job) -> Line:
     parts: list[Part] = ["Before touching anything write down the scale reading and the signal. "]
     where = "Seen from BEHIND the dish (looking towards the satellite) the feed's V mark should now stand "
-    parts += [where, *_leaning(job.present, "present", from_behind=True), "."]
+    parts += [where, *_leaning(job.present, "present", from_behind=True)]
+    if job.turning.way is not None:
+        parts.append(_marked_end(job.turning.way.present))
+    parts.append(".")
     if job.scale.is_known and job.turning.way is not None:
         reading = job.scale.reading(job.turning.way.present)
         parts += [" Scale: ", degrees("scale_now", reading, signed=True), "."]
@@ -119,7 +125,7 @@ def _turn(job: Job, way: Way) -> list[Line]:
                 f" {sense_from_behind(shorter.turn)} (from IN FRONT: {sense_from_front(shorter.turn)}). "
                 "Then the V mark stands ",
                 *_leaning(fold(shorter.target), "target_with_swap", from_behind=True),
-                " seen from behind. One of the two, never both.",
+                f" seen from behind{_marked_end(shorter.target)}. One of the two, never both.",
             )
         )
     return lines
@@ -133,9 +139,12 @@ def _check(job: Job, way: Way) -> list[Line]:
         *_leaning(goal, field, from_behind=True),
         " seen from BEHIND, ",
         lean(goal, from_behind=False),
-        " seen from IN FRONT.",
+        f" seen from IN FRONT{_marked_end(way.target)}.",
     ]
-    if abs(way.turn) >= 0.05:
+    if comes_to_the_same(way.turn):
+        aside = size("other_way_round", fold(2.0 * way.turn))
+        parts += [" Near a quarter turn the other way round ends ", aside, " from this: go by this angle."]
+    elif abs(way.turn) >= 0.05:
         wrong = fold(way.present - way.turn)
         parts += [
             " If it stands ",
@@ -163,7 +172,7 @@ def _tolerance(job: Job, way: Way) -> Line:
         aim = "aim for the target" if way.short == 0.0 else "the stop is as near to the target as it gets"
         parts.append(f" keeps what is asked (plus is CLOCKWISE from BEHIND); {aim}.")
     before, after = "margin_marked_before", "margin_marked_after"
-    mark = job.scale.nearest_mark(way.target)
+    mark = job.scale.nearest_mark(way.target, way.present)
     if job.row.has(before) and job.row.has(after) and way.short == 0.0 and job.feed.reaches(mark):
         shown = job.scale.reading(mark) if job.scale.is_known else fold(mark)
         what = "scale " if job.scale.is_known else "a setting of "
@@ -192,6 +201,11 @@ def _move_dish(job: Job, facts: CardFacts) -> Line:
         ]
     parts.append(". Peak it on the signal, check the feed's setting once more, and tighten everything.")
     return tuple(parts)
+
+
+def _marked_end(setting: float) -> str:
+    """That a mark past level points down: an angle from upright is then its other end's. Else empty."""
+    return " (marked end DOWN)" if math.cos(math.radians(setting)) < -1e-3 else ""
 
 
 def _leaning(setting: float, field: str, *, from_behind: bool) -> tuple[Part, ...]:

@@ -146,8 +146,8 @@ def _fixed(present: float, feed: Feed, slack: tuple[float, float]) -> Turning:
 class Scale:
     """A feed's scale: degrees a mark, the setting at its zero, and which way its numbers grow.
 
-    ``zero`` is NaN where it was not given (0 is then taken for rounding); ``sense`` is +1 where the
-    numbers grow clockwise seen from behind, −1 where they grow the other way.
+    ``zero`` is NaN where it was not given; ``sense`` is +1 where the numbers grow clockwise seen from
+    behind, −1 where they grow the other way.
     """
 
     step: float
@@ -163,9 +163,13 @@ class Scale:
         """What the scale shows at a setting, degrees."""
         return self.sense * (setting - (self.zero if self.is_known else 0.0))
 
-    def nearest_mark(self, setting: float) -> float:
-        """The setting at the whole mark nearest to a setting, degrees."""
-        zero = self.zero if self.is_known else 0.0
+    def nearest_mark(self, setting: float, present: float) -> float:
+        """The setting at the whole mark nearest to a setting, degrees.
+
+        Where the scale's zero is not known, whole marks are counted from the present setting, as the
+        margins of the assessed table are.
+        """
+        zero = self.zero if self.is_known else present
         return zero + round((setting - zero) / self.step) * self.step
 
 

@@ -35,6 +35,9 @@ Line = tuple[Part, ...]
 CLOCKWISE: Final = "CLOCKWISE"
 COUNTER_CLOCKWISE: Final = "COUNTER-CLOCKWISE"
 
+# Settings closer than this, degrees, are not told apart on a feed: common practice, no source.
+_TOLD_APART: Final = 5.0
+
 _FRACTIONS: Final = (
     (0.0, ""),
     (0.1, "a tenth"),
@@ -98,6 +101,11 @@ def _unsigned_zero(value: float, digits: int) -> float:
 def fold(angle: float) -> float:
     """An angle between polarisations, degrees, brought into (−90, 90]; NaN stays NaN."""
     return 90.0 - (90.0 - angle) % 180.0
+
+
+def comes_to_the_same(turn: float) -> bool:
+    """Whether a turn is so near a quarter that the opposite one ends within `_TOLD_APART` of it."""
+    return abs(turn) > 45.0 and abs(fold(2.0 * turn)) < _TOLD_APART
 
 
 def sense_from_behind(turn: float) -> str:
