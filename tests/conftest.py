@@ -18,6 +18,11 @@ from pathlib import Path
 from urllib.parse import quote
 
 import pytest
+from hypothesis import HealthCheck, settings
+
+# No test asserts a time, not even by way of a library: a busy machine is not a wrong program.
+settings.register_profile("untimed", deadline=None, suppress_health_check=[HealthCheck.too_slow])
+settings.load_profile("untimed")
 
 REQUIRE_ALL = os.environ.get("GEOSKEW_REQUIRE_ALL", "") not in ("", "0")
 NOT_APPLICABLE = ("not applicable", "the superuser may")

@@ -176,3 +176,11 @@ def test_a_full_disk_of_its_own(tmp_path: Path) -> None:
         assert names(disk) == []
     finally:
         subprocess.run(["umount", str(disk)], check=True)
+
+
+def test_a_librarys_own_number_of_an_error_is_not_taken_for_the_systems(tmp_path: Path) -> None:
+    error = RuntimeError("the directory cannot be read")
+    error.errno = 1  # type: ignore[attr-defined]  # GDAL's "application defined", the system's "not permitted"
+    assert str(files.failure(tmp_path / "a.tif", error)).endswith(
+        "could not be written: the directory cannot be read"
+    )

@@ -201,5 +201,5 @@ def test_bounds_where_a_projection_ends() -> None:
 
 def test_without_a_region_the_part_is_named() -> None:
     bare = scenario(bounds_deg=[0, 0, 1, 1], step_deg=0.5).model_copy(update={"region": None})
-    with pytest.raises(MissingPartError, match="region: is missing, and a raster needs it"):
+    with pytest.raises(MissingPartError, match="region: is missing, but needed for a raster"):
         grid_of(bare)

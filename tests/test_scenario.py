@@ -283,7 +283,7 @@ def test_require_names_what_is_missing_and_for_what(tmp_path: Path) -> None:
     scenario = read(tmp_path, LEAST)
     scenario.require("region", for_what="a raster")
     with pytest.raises(
-        MissingPartError, match=r"changeover: is missing, and a plan of visits needs it"
+        MissingPartError, match=r"changeover: is missing, but needed for a plan of visits"
     ) as caught:
         scenario.require("changeover", "region", "crews", for_what="a plan of visits")
     assert [problem.key for problem in caught.value.problems] == ["changeover", "crews"]

@@ -89,6 +89,9 @@ def main(arguments: Sequence[str] | None = None) -> int:
     """Run a command line and return the exit status: 0 done, 1 failed, 2 wrong input, 130 interrupted."""
     arguments = list(sys.argv[1:] if arguments is None else arguments) or ["--help"]
     _encodable()
+    if "--debug" not in arguments:
+        # GDAL's errors reach us as exceptions; what it would say on the terminal as well is for --debug.
+        os.environ.setdefault("CPL_LOG", os.devnull)
     streams = sys.stdout, sys.stderr
     try:
         result: Any = commands.main(args=arguments, prog_name="geoskew", standalone_mode=False)

@@ -129,7 +129,8 @@ def writing(path: str | Path) -> Iterator[Path]:
 def failure(path: str | Path, error: Exception) -> OutputError:
     """An error of the system or of a library, said in one clear line about the file at hand."""
     path = Path(path)
-    code = getattr(error, "errno", None)
+    # Libraries number their own errors under the same name.
+    code = error.errno if isinstance(error, OSError) else None
     reasons = {
         errno.EACCES: "permission denied; choose a folder that you may write to",
         errno.EPERM: "permission denied; choose a folder that you may write to",

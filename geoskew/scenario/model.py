@@ -116,7 +116,7 @@ class Scenario(Table):
         if not any(self._has(part) for part in parts):
             ways = ", or ".join(PARTS[part] for part in parts)
             raise MissingPartError(
-                Problem(f"{for_what} needs one of {', '.join(parts)}: add {ways}", file=self.path)
+                Problem(f"one of {', '.join(parts)} is needed for {for_what}: add {ways}", file=self.path)
             )
 
     def require(self, *parts: str, for_what: str) -> None:
@@ -137,6 +137,6 @@ class Scenario(Table):
         missing = [part for part in parts if not self._has(part)]
         if missing:
             raise MissingPartError(
-                Problem(f"is missing, and {for_what} needs it: add {PARTS[part]}", file=self.path, key=part)
+                Problem(f"is missing, but needed for {for_what}: add {PARTS[part]}", file=self.path, key=part)
                 for part in missing
             )
