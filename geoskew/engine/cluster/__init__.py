@@ -5,9 +5,9 @@ a folder that is named after the scenario and the layers. So whatever is lost on
 scheduler or the program that asked, the same command goes on with what is missing.
 """
 
+from geoskew.engine.cluster.clients import require_address, session
 from geoskew.engine.cluster.collect import cluster_blocks
 from geoskew.engine.cluster.jobs import Job, compute_tile
-from geoskew.engine.cluster.session import require_address, session
 from geoskew.engine.cluster.tiles import TileFolder, tile_side
 
 __all__ = [

@@ -81,7 +81,7 @@ def session(where: str) -> Iterator[Any]:
                     n_workers=int(where.partition(":")[2]),
                     threads_per_worker=1,
                     host="127.0.0.1",
-                    dashboard_address=None,
+                    dashboard_address="127.0.0.1:0",
                     silence_logs=logging.CRITICAL,
                     env=_ENVIRONMENT,
                 )
