@@ -19,7 +19,7 @@ class HomePath(click.Path):
     """A path in which ~ stands for the home folder, as behind an equals sign no shell replaces it."""
 
     def __init__(self) -> None:
-        super().__init__(path_type=Path)
+        super().__init__(path_type=Path, readable=False)  # whoever reads it says more
 
     def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> Any:
         """The path with the home folder in it."""
