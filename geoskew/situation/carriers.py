@@ -114,8 +114,8 @@ def antenna_leak(carrier: Any, *, satellite_db: Array, dish: Any, off_axis: Arra
 
 
 def with_rain(leak: Array, rain_db: Array, *, phasors: bool) -> Array:
-    """The leak of the antennas and that of rain together."""
-    return np.asarray(leak + (amplitude_sum if phasors else power_sum)(rain_db))
+    """The leak of antennas and rain together; at most 1, where both polarisations arrive alike."""
+    return np.minimum(leak + (amplitude_sum if phasors else power_sum)(rain_db), 1.0)
 
 
 def response(
