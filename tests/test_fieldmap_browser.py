@@ -8,6 +8,7 @@ import json
 import re
 import subprocess
 from collections.abc import Callable
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 
@@ -16,6 +17,7 @@ import numpy as np
 import pytest
 from test_outputs_fieldmap import HOSTILE, REGIONS, blocks_of, hostile_content
 
+from geoskew.fieldwork.reports.reading import read_reports
 from geoskew.outputs.fieldmap import Tiles, write_fieldmap
 from geoskew.outputs.fieldmap.overlays import mercator_y, to_mercator
 
@@ -198,7 +200,7 @@ def test_address_holds_filter_layer_view_and_site(drive: Drive, page: Path) -> N
     )
 
 
-def test_readings_stay_and_leave_as_a_report(drive: Drive, page: Path) -> None:
+def test_readings_stay_and_leave_as_a_report(drive: Drive, page: Path, tmp_path: Path) -> None:
     readings = {
         "setting_scale": "12,5", "setting_inclinometer": "12.1", "quality_before": "9.8", "quality_after": "11.2",
         "note": 'clamp "loose", tightened',
@@ -215,6 +217,13 @@ def test_readings_stay_and_leave_as_a_report(drive: Drive, page: Path) -> None:
     assert rows[0]["setting_scale"] == "12.5"
     assert rows[0]["note"] == readings["note"]
     assert re.fullmatch(r"\d{4}-\d\d-\d\d", rows[0]["date"])
+    file = tmp_path / out["name"]
+    file.write_text(out["csv"], encoding="utf-8", newline="")
+    read = read_reports(file, sites=[out["id"]], carriers=["lessons"], changeover=datetime.now(UTC))
+    assert read.rejected == ()
+    assert read.warnings == ()
+    assert (read.reports[0].setting_scale, read.reports[0].quality_after) == (12.5, 11.2)
+    assert read.reports[0].note == readings["note"]
 
 
 def test_hostile_text_is_shown_and_nothing_runs(drive: Drive, tmp_path: Path) -> None:
