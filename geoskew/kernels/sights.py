@@ -23,6 +23,9 @@ from geoskew.kernels.directions import (
 Array = NDArray[np.float64]
 Single = NDArray[np.float32]
 
+# Places at a time: what is known of them stays in the processor's first cache.
+_CHUNK: Final = 256
+
 NOT_WANTED: Final = np.empty((0, 0))
 NOT_WANTED_SINGLE: Final = np.empty((0, 0), dtype=np.float32)
 
@@ -49,14 +52,13 @@ def ground(longitude: Array, latitude: Array, height: Array) -> Ground:
 
 
 @compiled
-def _spread(parallel: Array, i: int, space: Array) -> Array:
-    """What row i knows of its latitudes, (5, W); `space` is filled where the row is one parallel."""
-    if parallel.shape[2] == space.shape[1]:
-        given: Array = parallel[i]
-        return given
+def _spread(parallel: Array, i: int, start: int, n: int, own: Array) -> None:
+    """What n places of row i, from `start` on, know of their latitudes, into (5, at least n)."""
     for m in range(5):
-        space[m, :] = parallel[i, m, 0]
-    return space
+        if parallel.shape[2] == 1:
+            own[m, :n] = parallel[i, m, 0]
+        else:
+            own[m, :n] = parallel[i, m, start : start + n]
 
 
 @compiled
@@ -93,29 +95,33 @@ def look(
         Radians in (−π/2, π/2].
     """
     width = meridian.shape[2]
-    to, arriving = np.empty((3, width)), np.empty((3, width))
-    r, space = np.empty(width), np.empty((5, width))
+    to, arriving, own = np.empty((3, _CHUNK)), np.empty((3, _CHUNK)), np.empty((5, _CHUNK))
+    lengths = np.empty(_CHUNK)
     for i in range(parallel.shape[0]):
-        turn, own = meridian[i if meridian.shape[0] > 1 else 0], _spread(parallel, i, space)
-        vector_row(turn[0], turn[1], own, position, to[0], to[1], to[2], r)
-        if azimuth.size:
-            azimuth_row(to[0], to[1], r, azimuth[i])
-        if elevation.size:
-            elevation_row(to[0], to[1], to[2], elevation[i])
-        if kilometres.size:
-            for j in range(width):
-                kilometres[i, j] = 1e-3 * r[j]
-        if distance.size:
-            distance[i, :] = r
-        if sine.size:
-            for j in range(width):
-                sine[i, j] = to[2, j] / r[j]
-        if skew.size or skew_degrees.size:
-            arriving_row(turn[0], turn[1], own, frame, to, r, arriving)
-            if skew.size:
-                vertical_row(to, r, arriving, skew[i])
-            if skew_degrees.size:
-                vertical_row_single(to, r, arriving, skew_degrees[i])
+        k = i if meridian.shape[0] > 1 else 0
+        for start in range(0, width, _CHUNK):
+            stop = min(start + _CHUNK, width)
+            cos, sin, r = meridian[k, 0, start:stop], meridian[k, 1, start:stop], lengths[: stop - start]
+            _spread(parallel, i, start, r.size, own)
+            vector_row(cos, sin, own, position, to[0], to[1], to[2], r)
+            if azimuth.size:
+                azimuth_row(to[0], to[1], r, azimuth[i, start:stop])
+            if elevation.size:
+                elevation_row(to[0], to[1], to[2], elevation[i, start:stop])
+            if kilometres.size:
+                for j in range(r.size):
+                    kilometres[i, start + j] = 1e-3 * r[j]
+            if distance.size:
+                distance[i, start:stop] = r
+            if sine.size:
+                for j in range(r.size):
+                    sine[i, start + j] = to[2, j] / r[j]
+            if skew.size or skew_degrees.size:
+                arriving_row(cos, sin, own, frame, to, r, arriving)
+                if skew.size:
+                    vertical_row(to, r, arriving, skew[i, start:stop])
+                if skew_degrees.size:
+                    vertical_row_single(to, r, arriving, skew_degrees[i, start:stop])
 
 
 @compiled
@@ -134,15 +140,20 @@ def look_across(
     dish looks at, `position` and `frame` are those of the satellite received.
     """
     width = meridian.shape[2]
-    to, far, arriving = np.empty((3, width)), np.empty((3, width)), np.empty((3, width))
-    r, q, space = np.empty(width), np.empty(width), np.empty((5, width))
+    to, far, arriving = np.empty((3, _CHUNK)), np.empty((3, _CHUNK)), np.empty((3, _CHUNK))
+    own, lengths = np.empty((5, _CHUNK)), np.empty((2, _CHUNK))
     for i in range(parallel.shape[0]):
-        turn, own = meridian[i if meridian.shape[0] > 1 else 0], _spread(parallel, i, space)
-        vector_row(turn[0], turn[1], own, dish, to[0], to[1], to[2], r)
-        vector_row(turn[0], turn[1], own, position, far[0], far[1], far[2], q)
-        if apart.size:
-            apart_row(to, far, apart[i])
-        if seen.size:
-            arriving_row(turn[0], turn[1], own, frame, far, q, arriving)
-            carry_row(to, r, far, q, arriving)
-            vertical_row(to, r, arriving, seen[i])
+        k = i if meridian.shape[0] > 1 else 0
+        for start in range(0, width, _CHUNK):
+            stop = min(start + _CHUNK, width)
+            cos, sin = meridian[k, 0, start:stop], meridian[k, 1, start:stop]
+            r, q = lengths[0, : stop - start], lengths[1, : stop - start]
+            _spread(parallel, i, start, r.size, own)
+            vector_row(cos, sin, own, dish, to[0], to[1], to[2], r)
+            vector_row(cos, sin, own, position, far[0], far[1], far[2], q)
+            if apart.size:
+                apart_row(to, far, apart[i, start:stop])
+            if seen.size:
+                arriving_row(cos, sin, own, frame, far, q, arriving)
+                carry_row(to, r, far, q, arriving)
+                vertical_row(to, r, arriving, seen[i, start:stop])
