@@ -202,6 +202,40 @@ def test_a_measured_setting_alone_gives_the_product_of_two_normal_distributions(
     assert variance == pytest.approx(0.2, rel=1e-2)
 
 
+def test_a_crew_that_exchanged_the_leads_as_its_card_says_is_not_accused() -> None:
+    # From 10° to 70° with two ports: the V mark then stands at 70° − 90° = −20°, and the signal is perfect.
+    kinds = {"done": 60}
+    field = Field(np.random.default_rng(3), kinds, after=True, measured=1.0)
+    size = field.kind.size
+    field.suits = np.full(size, 70.0)
+    field.plan = replace(
+        field.plan, present=np.full(size, 10.0), target=np.full(size, 70.0), ports=np.full(size, 2.0)
+    )
+    field.meter = type(field.meter)(field.suits)
+    exact = exact_signals(field.suits, np.full(size, 10.0), field.suits, np.zeros(size), after=True)
+    shown = np.where(np.arange(size) % 2 == 0, -20.0, 70.0)
+    field.evidence = Evidence(shown, np.full(size, 0.5), exact, np.isfinite(exact).astype(float))
+    found = judged(field)
+    assert (found.state == "done").all()
+    assert not found.accused.any()
+    np.testing.assert_allclose(found.posterior.setting, 70.0, atol=0.5)
+    # The same reading without a signal does not accuse either; with one port it does.
+    dumb = Evidence(shown, np.full(size, 0.5), exact * np.nan, np.zeros_like(exact))
+    field.evidence = dumb
+    assert not judged(field).accused.any()
+    field.plan = replace(field.plan, ports=np.ones(size))
+    assert (judged(field).accused == (shown < 0)).all()
+
+
+def test_leads_exchanged_by_mistake_show_in_the_signal_of_two_ports() -> None:
+    field = Field(np.random.default_rng(3), {"done": 1}, after=True, measured=1.0)
+    plan = replace(field.plan, ports=np.array([2.0]))
+    exact = exact_signals(field.suits, plan.present, plan.target + 90.0, np.zeros(1), after=True)
+    field.plan = plan
+    field.evidence = Evidence(plan.target, np.array([0.5]), exact, np.isfinite(exact).astype(float))
+    assert judged(field).state.tolist() == ["wrong-port"]
+
+
 def test_settings_are_averaged_across_ninety_degrees() -> None:
     mean, sigma = mean_setting([(89.0, 0.5), (-89.0, 0.5)])
     assert abs(mean) == pytest.approx(90.0)

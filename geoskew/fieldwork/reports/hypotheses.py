@@ -43,6 +43,9 @@ AIM_LOSSES_DB: Final = (1.5, 3.0, 5.0, 8.0, 12.0)
 OUT_BEFORE: Final = 0.25
 # How often the other target is what a crew aimed at, where a site has two.
 OTHER_TARGET: Final = 0.5
+# How often the leads were exchanged, where a feed has two ports: a card offers or orders it, and the V
+# mark then stands 90° from the target of a job well done. A setting alone does not tell the two apart.
+EXCHANGED: Final = 0.5
 # Points over ± so many standard deviations, and over the half circle.
 POINTS: Final = 61
 SIGMAS: Final = 4.5
@@ -68,7 +71,7 @@ class Plan:
     visited : ndarray of bool
         Whether anybody reports a visit; else there are only readings of the signal.
     ports : ndarray
-        Ports of the feed.
+        Ports of the feed. With two, the leads may have been exchanged, as cards offer it.
     """
 
     present: Array
@@ -82,6 +85,11 @@ class Plan:
     def part(self, rows: slice) -> Plan:
         """Some of the sites."""
         return Plan(*(getattr(self, name)[rows] for name in self.__dataclass_fields__))
+
+    @property
+    def exchanged(self) -> Array:
+        """Chance, (N,), that the leads of a feed set as planned were exchanged."""
+        return np.where(self.ports > 1, EXCHANGED, 0.0)
 
 
 @dataclass(frozen=True)
@@ -123,9 +131,12 @@ def branches(plan: Plan) -> list[Branch]:
         gap = np.minimum(np.abs(fold(centre - plan.target)), np.abs(fold(centre - other)))
         chance[name] = np.where(gap <= spread, 0.0, chance[name])
     number = {name: index for index, name in enumerate(NAMES)}
+    # Leads left as they were, or exchanged.
+    exchanges = ((1.0 - plan.exchanged, 0.0), (plan.exchanged, 90.0))
     found = [
-        _normal(number["done"], plan.target, spread, chance["done"] * (1.0 - share)),
-        _normal(number["done"], other, spread, chance["done"] * share),
+        _normal(number["done"], goal, spread, chance["done"] * often * leads, shown=shown)
+        for goal, often in ((plan.target, 1.0 - share), (other, share))
+        for leads, shown in exchanges
     ]
     for name, (centre, width) in centres.items():
         found.append(_normal(number[name], centre, width, chance[name], stays=name == "undone"))
@@ -138,9 +149,18 @@ def branches(plan: Plan) -> list[Branch]:
     for aim in range(1, len(AIM_LOSSES_DB) + 1):
         for aim_found, often in ((0, 1.0 - OUT_BEFORE), (aim, OUT_BEFORE)):
             of_this = chance["out-of-aim"] * often / len(AIM_LOSSES_DB)
-            found.append(
-                _normal(number["out-of-aim"], plan.target, spread, of_this, aim=aim, aim_found=aim_found)
-            )
+            found += [
+                _normal(
+                    number["out-of-aim"],
+                    plan.target,
+                    spread,
+                    of_this * leads,
+                    shown=shown,
+                    aim=aim,
+                    aim_found=aim_found,
+                )
+                for leads, shown in exchanges
+            ]
     found.append(_anywhere(number["elsewhere"], plan.target, chance["elsewhere"]))
     found = [one for one in found if np.isfinite(one.log_chance).any()]
     total = np.logaddexp.reduce([np.logaddexp.reduce(one.log_chance, axis=0) for one in found])

@@ -118,9 +118,11 @@ def _good_draws(reasoning: Reasoning, evidence: Evidence, repeats: int, rng: np.
             noise = accuracy.quality / np.sqrt(np.maximum(reasoning.count[:, k], 1.0))
             exact = reasoning.meter(slot, at, aim=0, stays=slot.stage == "found")
             quality[:, k] = exact + bias + spreads[slot.moment] + noise * rng.standard_normal(size)
-        shown = np.where(
-            evidence.measured, setting + evidence.setting_sigma * rng.standard_normal(size), np.nan
-        )
+        if (plan.ports > 1).any():  # leads exchanged: the V mark stands a quarter turn off, and rightly
+            mark = np.where(rng.random(size) < plan.exchanged, setting + 90.0, setting)
+        else:
+            mark = setting
+        shown = np.where(evidence.measured, mark + evidence.setting_sigma * rng.standard_normal(size), np.nan)
         faults[number] = reasoning.fault(shown, quality)
     return faults
 

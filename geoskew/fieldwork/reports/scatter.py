@@ -34,6 +34,8 @@ def with_observed_spread(plan: Plan, evidence: Evidence) -> tuple[Plan, float]:
     """
     distance = np.abs(fold(evidence.setting - plan.target))
     distance = np.fmin(distance, np.abs(fold(evidence.setting - plan.other_target)))
+    # With the leads exchanged the V mark of a feed set as planned stands a quarter turn off.
+    distance = np.where(plan.ports > 1, np.minimum(distance, 90.0 - distance), distance)
     known = np.isfinite(distance) & plan.visited
     count = int(known.sum())
     if count < FEWEST:
