@@ -1,10 +1,10 @@
 """Errors of the package: one tree, so that one handler turns any of them into one clear message.
 
-    GeoskewError            exit status 1: the work could not be finished
-    ├── InputError          exit status 2: something the user gave is wrong (also a ValueError)
-    │   └── MissingPartError    the command needs a part that the scenario does not have
-    └── OutputError         exit status 1: a result could not be written (also an OSError)
-        └── ExistingFileError   exit status 2: a file under a final name is not ours to replace
+GeoskewError            exit status 1: the work could not be finished
+├── InputError          exit status 2: something the user gave is wrong (also a ValueError)
+│   └── MissingPartError    the command needs a part that the scenario does not have
+└── OutputError         exit status 1: a result could not be written (also an OSError)
+    └── ExistingFileError   exit status 2: a file under a final name is not ours to replace
 """
 
 from __future__ import annotations

@@ -22,8 +22,20 @@ _SETTING: dict[str, Any] = {
     "kind": "circular",
     "period": 180.0,
 }
-_WINDOW: dict[str, Any] = {"unit": "deg", "ramp": "signed", "limits": (-90.0, 90.0), "contour_step": 5.0, "of": BOTH}
-_MISMATCH: dict[str, Any] = {"unit": "dB", "ramp": "loss", "limits": (0.0, 6.0), "contour_step": 0.5, "of": BOTH}
+_WINDOW: dict[str, Any] = {
+    "unit": "deg",
+    "ramp": "signed",
+    "limits": (-90.0, 90.0),
+    "contour_step": 5.0,
+    "of": BOTH,
+}
+_MISMATCH: dict[str, Any] = {
+    "unit": "dB",
+    "ramp": "loss",
+    "limits": (0.0, 6.0),
+    "contour_step": 0.5,
+    "of": BOTH,
+}
 _DISCRIMINATION: dict[str, Any] = {
     "unit": "dB",
     "ramp": "level",
@@ -33,7 +45,11 @@ _DISCRIMINATION: dict[str, Any] = {
 }
 
 
-@layer(**_SETTING, of=BOTH, description="Feed setting that serves both satellites best, clockwise from the local vertical")
+@layer(
+    **_SETTING,
+    of=BOTH,
+    description="Feed setting that serves both satellites best, clockwise from the local vertical",
+)
 def setting_shared(situation: Situation) -> Array:
     return situation.setting_shared
 
@@ -50,19 +66,27 @@ def turn_shared(situation: Situation) -> Array:
     return situation.shared.turn
 
 
-@layer(**_SETTING, of=BOTH, description="Turn from the present setting to the realigned one, clockwise positive")
+@layer(
+    **_SETTING, of=BOTH, description="Turn from the present setting to the realigned one, clockwise positive"
+)
 def turn_realigned(situation: Situation) -> Array:
     if not situation.turning_helps:
         return np.full(situation.places.shape, np.nan)
     return fold(situation.setting_realigned - situation.present)
 
 
-@layer(**_WINDOW, description="Low end of the window of settings that serve both, as a turn from the present setting")
+@layer(
+    **_WINDOW,
+    description="Low end of the window of settings that serve both, as a turn from the present setting",
+)
 def window_low(situation: Situation) -> Array:
     return situation.shared.low
 
 
-@layer(**_WINDOW, description="High end of the window of settings that serve both, as a turn from the present setting")
+@layer(
+    **_WINDOW,
+    description="High end of the window of settings that serve both, as a turn from the present setting",
+)
 def window_high(situation: Situation) -> Array:
     return situation.shared.high
 
@@ -92,41 +116,65 @@ def _discrimination(situation: Situation, moment: Moment, setting: Array) -> Arr
     return np.where(situation.of_weakest(moment, [np.asarray(one) for one in mixed]), 0.0 * error, value)
 
 
-@layer(**_MISMATCH, description="Loss of the wanted carrier after the changeover when nothing is touched")
+@layer(
+    **_MISMATCH,
+    description="Loss of the wanted carrier by cos² of the feed's error alone, after the changeover, when nothing is touched",
+)
 def mismatch_untouched(situation: Situation) -> Array:
     return polarisation.mismatch(_error(situation, "after", situation.present))
 
 
-@layer(**_MISMATCH, description="Loss of the wanted carrier before the changeover at the shared setting")
+@layer(
+    **_MISMATCH,
+    description="Loss of the wanted carrier by cos² of the feed's error alone, before the changeover, at the shared setting",
+)
 def mismatch_shared_before(situation: Situation) -> Array:
     return polarisation.mismatch(_error(situation, "before", situation.policy_shared))
 
 
-@layer(**_MISMATCH, description="Loss of the wanted carrier after the changeover at the shared setting")
+@layer(
+    **_MISMATCH,
+    description="Loss of the wanted carrier by cos² of the feed's error alone, after the changeover, at the shared setting",
+)
 def mismatch_shared_after(situation: Situation) -> Array:
     return polarisation.mismatch(_error(situation, "after", situation.policy_shared))
 
 
-@layer(**_MISMATCH, description="Loss of the wanted carrier after the changeover when the shared turn was made the wrong way")
+@layer(
+    **_MISMATCH,
+    description="Loss of the wanted carrier by cos² of the feed's error alone, after the changeover, when the shared turn was made the wrong way",
+)
 def mismatch_reversed(situation: Situation) -> Array:
     return polarisation.mismatch(_error(situation, "after", situation.policy_reversed))
 
 
-@layer(**_DISCRIMINATION, description="Wanted over crossed polarisation after the changeover when nothing is touched")
+@layer(
+    **_DISCRIMINATION,
+    description="Wanted over crossed polarisation after the changeover when nothing is touched",
+)
 def discrimination_untouched(situation: Situation) -> Array:
     return _discrimination(situation, "after", situation.present)
 
 
-@layer(**_DISCRIMINATION, description="Wanted over crossed polarisation before the changeover at the shared setting")
+@layer(
+    **_DISCRIMINATION,
+    description="Wanted over crossed polarisation before the changeover at the shared setting",
+)
 def discrimination_shared_before(situation: Situation) -> Array:
     return _discrimination(situation, "before", situation.policy_shared)
 
 
-@layer(**_DISCRIMINATION, description="Wanted over crossed polarisation after the changeover at the shared setting")
+@layer(
+    **_DISCRIMINATION,
+    description="Wanted over crossed polarisation after the changeover at the shared setting",
+)
 def discrimination_shared_after(situation: Situation) -> Array:
     return _discrimination(situation, "after", situation.policy_shared)
 
 
-@layer(**_DISCRIMINATION, description="Wanted over crossed polarisation after the shared turn was made the wrong way")
+@layer(
+    **_DISCRIMINATION,
+    description="Wanted over crossed polarisation after the shared turn was made the wrong way",
+)
 def discrimination_reversed(situation: Situation) -> Array:
     return _discrimination(situation, "after", situation.policy_reversed)

@@ -1,33 +1,26 @@
-"""What a command says while it works: a bar on a terminal, a plain line now and then elsewhere."""
+"""What a command says while it works: a bar on a terminal, nothing but its remarks elsewhere."""
 
 from __future__ import annotations
 
 import logging
 import sys
-import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
-from typing import Final
 
 import click
-
-# Without a terminal: one line in this many seconds, so that a log shows that work goes on.
-PLAIN_EVERY_SECONDS: Final = 30.0
 
 Report = Callable[[str, float, float], None]
 
 
 @contextmanager
 def progress(*, quiet: bool) -> Iterator[Report]:
-    """Give a function ``report(phase, done, total)``; standard error only."""
-    if quiet:
+    """Give a function ``report(phase, done, total)``; on standard error, and only on a terminal."""
+    if quiet or not sys.stderr.isatty():
         yield lambda phase, done, total: None
-    elif sys.stderr.isatty():
+    else:
         with _bars() as report:
             yield report
-    else:
-        yield _plain()
 
 
 @contextmanager
@@ -51,19 +44,6 @@ def _bars() -> Iterator[Report]:
             bars.update(tasks[phase], completed=done, total=total)  # type: ignore[arg-type]  # rich's TaskID is an int
 
         yield report
-
-
-def _plain() -> Report:
-    last = time.monotonic()
-
-    def report(phase: str, done: float, total: float) -> None:
-        nonlocal last
-        if time.monotonic() - last >= PLAIN_EVERY_SECONDS:
-            last = time.monotonic()
-            share = 100.0 * done / total if total else 100.0
-            say(f"{phase}: {share:.0f} %")
-
-    return report
 
 
 def say(text: str, *, quiet: bool = False) -> None:

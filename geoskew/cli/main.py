@@ -38,6 +38,11 @@ COMMANDS: Final[dict[str, str]] = {
 }
 
 
+INTERRUPTED: Final = (
+    "interrupted; what was finished is whole, the rest is missing, nothing half-written is left"
+)
+
+
 class LazyCommands(click.Group):
     """Commands that are imported when they are called."""
 
@@ -98,7 +103,9 @@ def main(arguments: Sequence[str] | None = None) -> int:
         click.echo(nl=False)  # a full disk or a reader that has gone shows now, not at the very end
         return result if isinstance(result, int) else 0
     except (KeyboardInterrupt, click.exceptions.Abort):
-        console.say("interrupted; nothing half-written was left under a final name")
+        console.say(
+            "interrupted; what was finished is whole, the rest is missing, nothing half-written is left"
+        )
         return 130
     except click.ClickException as error:
         console.say(_usage(error))

@@ -9,6 +9,7 @@ from concurrent.futures import Future, ThreadPoolExecutor
 from functools import partial
 from typing import Any, Final
 
+import numpy as np
 from numpy.typing import NDArray
 
 from geoskew import kernels
@@ -22,6 +23,8 @@ Block = tuple[Window, Values]
 
 # A grid of fewer cells is done by the time that the compiler would be.
 COMPILED_FROM_CELLS: Final = 10_000_000
+# Rows worked on at once: keeps the hundreds of intermediate arrays small.
+STRIP_ROWS: Final = 64
 
 
 def compute_block(
@@ -32,8 +35,19 @@ def compute_block(
 
 
 def _values(scenario: Scenario, inputs: Inputs, grid: Grid, window: Window, names: Sequence[str]) -> Values:
-    compiled = grid.cells >= COMPILED_FROM_CELLS and kernels.ready()
-    return evaluate(scenario, grid.block(window), names, inputs=inputs, compiled=compiled)
+    if grid.cells >= COMPILED_FROM_CELLS and kernels.ready():
+        return evaluate(scenario, grid.block(window), names, inputs=inputs, compiled=True)
+    values: Values = {}
+    for first in range(0, window.height, STRIP_ROWS):
+        rows = slice(first, min(first + STRIP_ROWS, window.height))
+        strip = Window(window.row + first, window.column, rows.stop - first, window.width)
+        for name, part in evaluate(scenario, grid.block(strip), names, inputs=inputs).items():
+            if name not in values:
+                # Rasters store 32-bit floats; half the memory of a block in flight.
+                kind = np.float32 if part.dtype == np.float64 else part.dtype
+                values[name] = np.empty((window.height, window.width), dtype=kind)
+            values[name][rows] = part
+    return values
 
 
 def pending_blocks(

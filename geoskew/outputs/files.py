@@ -141,7 +141,8 @@ def failure(path: str | Path, error: Exception) -> OutputError:
         errno.EFBIG: "the file would grow beyond what the system allows",
         errno.ENAMETOOLONG: "the name is too long",
     }
-    if code in (errno.ENOSPC, errno.EDQUOT) or _disk_is_full(path):
+    # A reason of the system's own goes before a guess from the free space, which /proc has none of.
+    if code in (errno.ENOSPC, errno.EDQUOT) or (code not in reasons and _disk_is_full(path)):
         reason = "the disk is full; free some space or choose another disk"
     else:
         reason = reasons.get(code or 0, f"could not be written: {str(error) or type(error).__name__}")

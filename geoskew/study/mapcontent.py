@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Sequence
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Final
 
@@ -78,7 +80,7 @@ def map_content(
     return MapContent(
         title=scenario.title,
         geometry=_geometry(study),
-        provenance=provenance(study),
+        provenance={"Made": made_on(), **provenance(study)},
         cautions=CAUTIONS,
         judged_in="rain" if scenario.judged_in == "rain" else "clear",
         reserve_db=scenario.decision.reserve_db,
@@ -107,6 +109,13 @@ def background(tiles: str | None) -> Tiles | None:
     chosen = Tiles(tiles, "")
     fieldmap.tile_origin(chosen)
     return chosen
+
+
+def made_on() -> str:
+    """Today's date in UTC, or the date that SOURCE_DATE_EPOCH stands for (reproducible-builds.org)."""
+    given = os.environ.get("SOURCE_DATE_EPOCH", "")
+    now = datetime.fromtimestamp(int(given), UTC) if given.isdigit() else datetime.now(UTC)
+    return now.date().isoformat()
 
 
 def provenance(study: Study) -> dict[str, str]:

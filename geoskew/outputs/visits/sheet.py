@@ -47,6 +47,10 @@ DAY_MEANINGS: Final = {
 }
 _ORDER: Final = tuple(MEANINGS)
 
+# Stands for the action on a day of a round without a visit.
+DRIVE: Final = "drive"
+DECIMALS: Final = 6
+
 
 @dataclass(frozen=True)
 class VisitSheets:
@@ -92,11 +96,25 @@ def stops(sheets: VisitSheets) -> pandas.DataFrame:
     return table[[name for name in _ORDER if name in table]]
 
 
-def everyone(sheets: VisitSheets) -> pandas.DataFrame:
-    """The visits in order of crew, day and driving, and behind them the sites that are not reached."""
+def _with_driving_days(visits: pandas.DataFrame, days: pandas.DataFrame) -> pandas.DataFrame:
     import pandas
 
-    table = stops(sheets).astype(object)
+    idle = days[days["visits"] == 0]
+    if idle.empty:
+        return visits
+    rows = pandas.DataFrame({"crew": idle["crew"], "day": idle["day"], "order": 0, "action": DRIVE})
+    joined = pandas.concat([visits, rows], ignore_index=True)
+    return joined.sort_values(["crew", "day", "order"], kind="stable", ignore_index=True)
+
+
+def everyone(sheets: VisitSheets) -> pandas.DataFrame:
+    """The visits in order of crew, day and driving, and behind them the sites that are not reached.
+
+    A day spent driving alone has a row without a site.
+    """
+    import pandas
+
+    table = _with_driving_days(stops(sheets), sheets.days).round(DECIMALS).astype(object)
     columns = [name for name in _ORDER if name in table or name == "reason"]
     lost = sheets.unreached.astype(object).reindex(columns=columns)
     return pandas.concat([table.reindex(columns=columns), lost], ignore_index=True)
