@@ -22,7 +22,7 @@ PACKAGE = ROOT / "geoskew"
 
 # Modules and packages of the first level, by group.
 GROUPS: dict[str, set[str]] = {
-    "foundation": {"__init__", "angles", "constants", "errors", "ramps", "resources", "waveform"},
+    "foundation": {"__init__", "angles", "constants", "errors", "ramps", "resources", "turning", "waveform"},
     "inputs": {"places", "region", "scenario", "sites", "database"},
     "directions": {"geometry", "polarisation"},
     "power": {"coverage", "kernels", "link", "receiver", "terrain", "weather"},

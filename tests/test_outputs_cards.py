@@ -21,8 +21,8 @@ from scenes import at, scenario
 from geoskew.errors import OutputError
 from geoskew.outputs.cards import CardFacts, CarrierLine, write_cards
 from geoskew.outputs.cards.dial import Dial, Stroke, hands
-from geoskew.outputs.cards.turning import Feed, Scale, plan_turning, sense_of_scale
 from geoskew.outputs.cards.words import marks_in_words
+from geoskew.turning import Feed, Scale, plan_turning, sense_of_scale
 
 CARRIER = CarrierLine("main", "V", 11.95, 27.5, "8PSK 3/4", 8.7)
 FACTS = CardFacts(

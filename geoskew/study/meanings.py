@@ -37,6 +37,11 @@ GIVEN: Final[dict[str, tuple[str, str]]] = {
     "access": ("", "what to know of the way there"),
     "last_visit": ("", "date of the last visit"),
     "action_reason": ("", "why this action, and the port to take where that changes"),
+    "turn_to_make": (
+        "deg",
+        "turn that the crew makes, within the feed's stops, positive clockwise seen from behind the dish",
+    ),
+    "turn_remark": ("", "what goes with the turn to make: leads to exchange, a stop, or why there is none"),
     "weakest_before": (
         "",
         "carrier with the least margin before the changeover, feed and dish perfectly set",

@@ -18,6 +18,7 @@ from geoskew.sites import SiteList
 from geoskew.situation import Inputs, Situation
 from geoskew.study.meanings import GIVEN
 from geoskew.study.reasons import action_reasons
+from geoskew.study.turns import turns_of
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -41,18 +42,22 @@ def assess(scenario: Scenario, sites: SiteList, inputs: Inputs) -> Assessed:
     -------
     Assessed
         Columns: id, lat, lon, reserved columns that were given, every layer, the weakest carriers,
-        then the columns passed through. ``action`` by name; None or NaN where there is no value.
+        the turns to make, then the columns passed through. ``action`` by name; None or NaN where there is
+        no value.
     """
     import pandas as pd
 
     names = available(scenario)
     parts = [_values(scenario, part, names, inputs) for part in chunks(sites.places, CHUNK)]
     layers = pd.DataFrame({name: np.concatenate([part[name] for part in parts]) for name in parts[0]})
-    front, back = sites.front(), sites.back()
+    front, back = sites.front().reset_index(drop=True), sites.back()
+    # The turns need what was given of a feed: its present setting, its stops, its ports.
+    turns = turns_of(pd.concat([front, layers], axis=1), ports_of(scenario, sites.places))
+    layers = layers.assign(turn_to_make=turns.turn, turn_remark=turns.remark)
     # A column of the list that bears a layer's name would stand twice: ours keeps the name.
     taken = set(layers.columns) | set(front.columns)
     back = back.rename(columns={name: f"given_{name}" for name in back.columns if name.lower() in taken})
-    table = pd.concat([front.reset_index(drop=True), layers, back.reset_index(drop=True)], axis=1)
+    table = pd.concat([front, layers, back.reset_index(drop=True)], axis=1)
     return Assessed(table, tuple(_info(name, name in back.columns) for name in table.columns))
 
 
@@ -71,6 +76,13 @@ def chunks(places: Places, size: int) -> Iterator[Places]:
         )
 
 
+def ports_of(scenario: Scenario, places: Places) -> Any:
+    """Ports of the places' feeds, (N,), or one number where no place has its own."""
+    ports = places.columns.get("ports")
+    default = scenario.terminal.ports
+    return default if ports is None else np.where(np.isnan(ports), default, ports)
+
+
 def _values(
     scenario: Scenario, places: Places, names: tuple[str, ...], inputs: Inputs
 ) -> dict[str, NDArray[Any]]:
@@ -82,11 +94,7 @@ def _values(
             values[name] = np.array([words.get(int(code)) for code in array], dtype=object)
         else:
             values[name] = np.where(array == NO_CLASS, np.nan, array) if record.is_class else array
-    ports = places.columns.get("ports")
-    default = scenario.terminal.ports
-    values["action_reason"] = action_reasons(
-        scenario, values["action"], default if ports is None else np.where(np.isnan(ports), default, ports)
-    )
+    values["action_reason"] = action_reasons(scenario, values["action"], ports_of(scenario, places))
     if len(scenario.carriers_before) > 1:
         situation = Situation(scenario, places, inputs)
         for moment in ("before", "after"):

@@ -21,7 +21,7 @@ if TYPE_CHECKING:
 AHEAD: Final = ("preset",)
 AT_CHANGEOVER: Final = ("turn-at-changeover", "re-aim")
 # Columns of the assessed table that a day sheet carries on, where they exist.
-_CARRIED: Final = ("name", "district", "access", "weight", "fail_probability")
+_CARRIED: Final = ("turn_remark", "name", "district", "access", "weight", "fail_probability")
 _DAY_COLUMNS: Final = [
     "crew", "day", "visits", "km", "base_lon", "base_lat", "start_lon", "start_lat", "end_lon", "end_lat",
     "night",
@@ -37,8 +37,8 @@ class Plan:
     visits : DataFrame
         ``crew``, ``day`` (date), ``order`` (from 1), ``id``, ``action``, ``turn`` (degrees from the present
         setting, positive clockwise seen from behind), ``km_leg`` (from the stop before or the base, a night
-        on the way included),
-        ``lon``, ``lat``, and the columns name, district, access, weight, fail_probability where given.
+        on the way included), ``lon``, ``lat``, and the columns turn_remark, name, district, access, weight,
+        fail_probability where given.
     days : DataFrame
         ``crew``, ``day``, ``visits``, ``km`` (with the way out and home), ``base_lon``, ``base_lat``,
         ``start_lon``, ``start_lat``, ``end_lon``, ``end_lat`` (the base, or where the night is spent; on a
@@ -157,7 +157,9 @@ def _stops(
     stops: list[dict[str, Any]] = []
     for k, place in enumerate(one.tour):
         row = rows.table.iloc[place - len(crews)]
-        turn = row.get("turn_shared" if row["action"] in AHEAD else "turn_realigned", np.nan)
+        planned = "turn_shared" if row["action"] in AHEAD else "turn_realigned"
+        # The turn within the feed's stops, where the table holds it: that of the job card.
+        turn = row.get("turn_to_make" if "turn_to_make" in row.index else planned, np.nan)
         order = 1 + sum(1 for day in cut.day_of_stop[:k] if day == cut.day_of_stop[k])
         stop = {"crew": crews[one.crew].name, "day": one.days[cut.day_of_stop[k]].day, "order": order}
         stop |= {"id": row["id"], "action": row["action"], "turn": turn, "km_leg": float(legs[k])}

@@ -10,8 +10,8 @@ from typing import Any, Final
 from geoskew.outputs.cards.dial import Dial
 from geoskew.outputs.cards.facts import CardFacts
 from geoskew.outputs.cards.signals import Signal, signals
-from geoskew.outputs.cards.turning import Feed, Scale, Turning, plan_turning, sense_of_scale
 from geoskew.outputs.cards.words import Given, Line, Number, Row, degrees, fold
+from geoskew.turning import Feed, Scale, Turning, plan_turning, sense_of_scale
 
 # Actions that send a crew to turn a feed.
 CARD_ACTIONS: Final = ("preset", "turn-at-changeover", "re-aim")

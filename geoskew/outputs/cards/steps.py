@@ -10,7 +10,6 @@ from typing import Final
 
 from geoskew.outputs.cards.facts import CardFacts
 from geoskew.outputs.cards.site import Job
-from geoskew.outputs.cards.turning import Way
 from geoskew.outputs.cards.words import (
     Line,
     Number,
@@ -25,6 +24,7 @@ from geoskew.outputs.cards.words import (
     sense_from_front,
     size,
 )
+from geoskew.turning import Way
 
 # Common practice, no source: the usual cautions of work on fixed dishes.
 CAUTIONS: Final = (

@@ -15,6 +15,8 @@ from geoskew.outputs.tables import ColumnInfo
 from geoskew.outputs.visits import VisitSheets
 from geoskew.study.plan import DEFAULT_DETOUR
 from geoskew.study.reports.orders import VISITED
+from geoskew.study.table import ports_of
+from geoskew.study.turns import turns_of
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -53,6 +55,7 @@ COLUMNS: Final = (
     ColumnInfo("action", "", "what is to be done"),
     ColumnInfo("what", "", "in words"),
     ColumnInfo("turn", "deg", "turn of the feed, positive clockwise seen from behind the dish", "layer"),
+    ColumnInfo("turn_remark", "", "what goes with the turn: leads to exchange, a stop, or why there is none"),
     ColumnInfo("setting_deg", "deg", "setting that the feed is thought to have", "layer"),
     ColumnInfo("setting_error", "deg", "root mean square error of that setting", "layer"),
     ColumnInfo("reason", "", "why no crew and day are given"),
@@ -95,7 +98,10 @@ def left_of(
     rows = np.flatnonzero(action != "")
     todo = table.iloc[rows].copy()
     todo["action"] = action[rows]
-    todo["turn"] = [_turn(row) for _, row in todo.iterrows()]
+    # What is left need not be what was planned: a dish to be peaked has no turn.
+    turns = turns_of(todo, np.broadcast_to(ports_of(scenario, study.sites.places), len(table))[rows])
+    todo["turn"] = todo["turn_to_make"] = turns.turn
+    todo["turn_remark"] = turns.remark
     for_cards = todo[todo["action"].isin(VISITED)]
     sheets = plan = None
     if scenario.crews:
@@ -140,13 +146,6 @@ def _actions(table: pd.DataFrame, found: Reconciled, *, late: bool) -> np.ndarra
     action = np.where(off, asked, action)
     action = np.where((state == "unclear") & (action == ""), READ, action)
     return np.where(state == "out-of-aim", PEAK, action).astype(object)
-
-
-def _turn(row: pd.Series[Any]) -> float:
-    if row["action"] in (PEAK, READ):
-        return float("nan")
-    value = row.get("turn_shared" if row["action"] == "preset" else "turn_realigned", np.nan)
-    return float(value)
 
 
 def _plan(

@@ -10,10 +10,10 @@ from numpy.typing import NDArray
 from geoskew.angles import fold
 from geoskew.fieldwork.reports import Facts, Orders
 from geoskew.geometry import Array
+from geoskew.study.turns import AHEAD, numbers, turns_of
+from geoskew.turning import sense_of_scale
 
 if TYPE_CHECKING:
-    import pandas as pd
-
     from geoskew.study.core import Study
 
 # How well a setting in the site list is known, degrees: common practice, no source.
@@ -27,14 +27,17 @@ def orders_of(study: Study) -> Orders:
     table = study.assessed.table
     action = table["action"].astype(str).to_numpy()
     spread = terminal(study, "setting_spread_deg")
-    measured = _numbers(table, "setting_deg")
+    measured = numbers(table, "setting_deg")
     known = np.isfinite(measured)
-    realigned = _numbers(table, "setting_realigned")
-    shared = _numbers(table, "setting_shared")
+    realigned = numbers(table, "setting_realigned")
+    shared = numbers(table, "setting_shared")
+    # Where a stop ends the turn ahead of time the card asks for the stop, and for no more.
+    asked = turns_of(table, terminal(study, "ports")).setting
+    shared = np.where((action == AHEAD) & np.isfinite(asked), asked, shared)
     return Orders(
         planned=np.isin(action, VISITED),
         at_changeover=np.isin(action, AT_CHANGEOVER),
-        present=np.where(known, fold(measured), _numbers(table, "skew_before")),
+        present=np.where(known, fold(measured), numbers(table, "skew_before")),
         present_error=np.where(known, MEASURED_DEG, spread),
         shared=shared,
         realigned=realigned,
@@ -45,8 +48,6 @@ def orders_of(study: Study) -> Orders:
 
 def facts_of(study: Study) -> dict[str, Facts]:
     """What reading the reports of each site needs, by its identifier."""
-    from geoskew.outputs.cards.turning import sense_of_scale
-
     sites = study.sites
     count = len(sites)
     zero = sites.numbers.get("scale_zero_deg", np.full(count, np.nan))
@@ -73,9 +74,3 @@ def terminal(study: Study, key: str) -> Array:
     default = np.full(places.shape, float(getattr(study.scenario.terminal, key)))
     own: NDArray[Any] | None = places.columns.get(key)
     return default if own is None else np.where(np.isnan(own), default, own)
-
-
-def _numbers(table: pd.DataFrame, name: str) -> Array:
-    if name not in table:
-        return np.full(len(table), np.nan)
-    return table[name].to_numpy(dtype=np.float64, na_value=np.nan)
