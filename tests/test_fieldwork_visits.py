@@ -476,6 +476,18 @@ def test_missing_or_foreign_file_of_roads(tmp_path: Path) -> None:
         read_distances(file, {})
 
 
+def test_a_stop_bears_the_turn_within_the_stops_of_the_feed_and_its_remark() -> None:
+    table, crews = network(4, 1, spread=0.2, seed=5)
+    told = table.assign(turn_to_make=[-140.0, np.nan, 3.0, 4.0], turn_remark=["a", "b", "", ""])
+    found = plan(told, crews).visits.set_index("id")
+    for identity, turn, remark in zip(told["id"], told["turn_to_make"], told["turn_remark"], strict=True):
+        if identity in found.index:
+            assert found.loc[identity, "turn"] == pytest.approx(turn, nan_ok=True)
+            assert found.loc[identity, "turn_remark"] == remark
+    assert len(found) > 0
+    assert "turn_remark" not in plan(table, crews).visits
+
+
 def test_weights_as_given_may_have_a_decimal_comma() -> None:
     table = pd.DataFrame({"id": list("abc"), "lat": -33.5, "lon": -64.0, "action": "preset"})
     table["weight"] = ["1", "2,5", ""]

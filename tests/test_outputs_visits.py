@@ -140,6 +140,23 @@ def test_calendar_reads_back(tmp_path: Path) -> None:
     assert (south["GEO"].latitude, south["GEO"].longitude) == (-17.5, -179.95)
 
 
+def test_what_goes_with_a_turn_stands_in_table_and_calendar(tmp_path: Path) -> None:
+    plain = sheets()
+    remarks = ["exchange the leads", "", "cannot reach: do not force it, report to the planner"]
+    told = sheets(visits=plain.visits.assign(turn_remark=remarks))
+    for ending in ENDINGS:
+        write_visits(tmp_path / f"visits{ending}", told)
+    with (tmp_path / "visits.csv").open(encoding="utf-8", newline="") as stream:
+        rows = list(csv.DictReader(stream))
+    assert [one["turn_remark"] for one in rows if one["crew"]] == remarks
+    text = icalendar.Calendar.from_ical((tmp_path / "visits.ics").read_bytes())
+    described = [str(event.get("description", "")) for event in text.walk("VEVENT")]
+    assert any("from in front 10.5° counter-clockwise; exchange the leads (" in one for one in described)
+    assert any("re-aim; cannot reach: do not force it, report to the planner (" in one for one in described)
+    layer = pyogrio.read_dataframe(tmp_path / "visits.gpkg", layer="visits", read_geometry=False)
+    assert layer["turn_remark"].fillna("").tolist() == remarks
+
+
 def test_calendar_keeps_the_rules_of_rfc_5545(tmp_path: Path) -> None:
     path = tmp_path / "visits.ics"
     write_visits(path, sheets())

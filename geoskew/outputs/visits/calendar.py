@@ -72,6 +72,9 @@ def _stop(row: dict[Any, Any]) -> str:
     words = f"{row['order']}. {row['id']}{named}: {row['action']}"
     if row["from_behind"]:
         words += f"; from behind the dish {row['from_behind']}, from in front {row['from_front']}"
+    remark = row.get("turn_remark")
+    if isinstance(remark, str) and remark:
+        words += f"; {remark}"
     return _line(f"{words} ({row['lat']:.5f}, {row['lon']:.5f})")
 
 
