@@ -197,6 +197,14 @@ def _vapour_at(
     return np.asarray(density), np.asarray(column)
 
 
+def vapour_nodes(tabulated: float) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+    """Height in km, 1/(scale height), density in g/m³ and column in kg/m² of all nodes of P.836-6."""
+    densities, columns = (
+        np.asarray(lattice(name, tabulated).values, dtype=np.float64) for name in ("836/v6_rho", "836/v6_v")
+    )
+    return _node_heights(), _inverse_scale_height(tabulated), densities, columns
+
+
 @cache
 def _inverse_scale_height(percentage: float) -> FloatArray:
     return np.asarray(1.0 / lattice("836/v6_vsch", percentage).values)

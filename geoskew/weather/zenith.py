@@ -26,6 +26,7 @@ _HEIGHT_KM = (-0.6, 7.0)
 _TEMPERATURE_K = (230.0, 310.0)
 _DENSITY = (0.0, 35.0)
 _LOG_COLUMN = (log(0.05), log(100.0))
+RANGES = (_HEIGHT_KM, _TEMPERATURE_K, _DENSITY, _LOG_COLUMN)
 _HEIGHT_DEGREE, _TEMPERATURE_DEGREE, _COLUMN_DEGREE = 5, 4, 10
 
 
@@ -52,6 +53,11 @@ class ZenithGas:
         self._moist = _power_basis(slope)
         columns = np.exp(_nodes(_COLUMN_DEGREE, _LOG_COLUMN))
         self._ratio = _power_basis(gas.column_ratio(frequency_ghz, columns))
+
+    @property
+    def tables(self) -> tuple[FloatArray, FloatArray, FloatArray]:
+        """Coefficients over `RANGES`: of dry air, of its growth with density, and of the column's ratio."""
+        return self._dry, self._moist, self._ratio
 
     @classmethod
     @lru_cache(maxsize=64)

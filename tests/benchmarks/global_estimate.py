@@ -23,11 +23,13 @@ from dataclasses import dataclass
 from pathlib import Path
 from tempfile import TemporaryDirectory
 
+import dask.config
 import psutil  # comes with distributed
 from distributed import Client, LocalCluster
 from timing import machine
 
 from geoskew.engine.blocks import COMPILED_FROM_CELLS
+from geoskew.engine.cluster.clients import ENVIRONMENT
 from geoskew.region import Grid
 from geoskew.study.core import Study
 from geoskew.study.rasters import write_study_rasters
@@ -129,6 +131,7 @@ def main() -> None:
     parser.add_argument("--folder", type=Path, default=None, help="where to work")
     given = parser.parse_args()
     here = TemporaryDirectory(dir=given.folder, prefix="estimate-")
+    dask.config.set({"distributed.nanny.pre-spawn-environ": ENVIRONMENT})
     cluster = LocalCluster(
         n_workers=2, threads_per_worker=1, host="127.0.0.1", dashboard_address="127.0.0.1:0", silence_logs=50
     )

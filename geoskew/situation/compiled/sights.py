@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from geoskew import receiver, weather
+from geoskew import receiver
 from geoskew.geometry import Array
 from geoskew.kernels import powers, sights
 from geoskew.link import ratio
@@ -20,6 +20,7 @@ from geoskew.situation.carriers import Moment, Stand
 from geoskew.situation.compiled.terms import Curves, dish_of, gas_terms, power_terms
 from geoskew.situation.core import Situation
 from geoskew.situation.inputs import Inputs
+from geoskew.weather.grids import clear_zenith_over
 
 _GEOMETRY = ("azimuth", "elevation", "range", "skew")
 # Beyond this the receive patterns have steps, which a table would smear.
@@ -131,10 +132,8 @@ class Sights(Situation):
         both = (*self.scenario.carriers_before, *self.scenario.carriers_after)
         frequencies = tuple(sorted({carrier.frequency_ghz for carrier in both}))
         places = self.places
-        gas = weather.clear_zenith(
-            places.longitude, places.latitude, places.height, frequencies_ghz=frequencies
-        )
-        return frequencies, np.stack(gas)
+        where = (places.longitude, places.latitude, places.height)
+        return frequencies, clear_zenith_over(*where, frequencies_ghz=frequencies)
 
     def clear_curves(self, stand: Stand) -> Curves:
         """All carriers in clear sky, in a dish on the satellite they come from."""
