@@ -9,7 +9,14 @@ turns margins along the ladder into the part of a year in which they are lost.
 from __future__ import annotations
 
 from geoskew.weather.attenuation import Attenuation, attenuation, clear_sky_gas, combined, ladder
-from geoskew.weather.climate import CLEAR_PERCENTAGE, HELD_PERCENTAGE, Climate, clear_zenith, climate, climates
+from geoskew.weather.climate import (
+    CLEAR_PERCENTAGE,
+    HELD_PERCENTAGE,
+    Climate,
+    clear_zenith,
+    climate,
+    climates,
+)
 from geoskew.weather.depolarisation import discrimination
 from geoskew.weather.editions import EDITIONS
 from geoskew.weather.outage import HOURS_PER_YEAR, PERCENTAGES, Crossing, hours, percentage_where
