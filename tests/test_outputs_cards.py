@@ -289,14 +289,20 @@ def test_scale_readings_follow_zero_and_sense(tmp_path: Path) -> None:
     assert Scale(5.0, zero=10.0, sense=-1).reading(30.0) == -20.0
 
 
-@pytest.mark.parametrize("columns", [{}, {"setting_deg": 12.3}, {"scale_zero_deg": 3.1}])
-def test_nearest_mark_is_the_one_whose_margins_are_printed(tmp_path: Path, columns: dict[str, float]) -> None:
+@pytest.mark.parametrize("step", [5.0, 7.0, 8.0])
+@pytest.mark.parametrize(
+    "columns",
+    [{}, {"setting_deg": 12.3}, {"scale_zero_deg": 3.1}, {"setting_deg": 12.3, "scale_zero_deg": -150.0}],
+)
+def test_nearest_mark_is_the_one_whose_margins_are_printed(
+    tmp_path: Path, columns: dict[str, float], step: float
+) -> None:
     # A feed left on the mark that the card names has the margins that the card prints beside it.
-    scene = scenario(terminal={"scale_step_deg": 5.0})
+    scene = scenario(terminal={"scale_step_deg": step})
     names = ("skew_before", "turn_shared", "setting_shared", "window_low", "window_high")
     marked = ("margin_marked_before", "margin_marked_after")
     site = {name: float(value) for name, value in at(scene, -34.6, -58.4, *names, *marked, **columns).items()}
-    article = card(tmp_path, row(**site, **columns))
+    article = card(tmp_path, row(**site, **columns, scale_step_deg=step))
     (shown,) = article.fields["nearest_mark"]
     left = at(
         scene, -34.6, -58.4, "margin_before", "margin_untouched",

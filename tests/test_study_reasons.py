@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import numpy as np
 import pytest
 from scenes import scenario
 
 from geoskew.scenario import Scenario
-from geoskew.study.reasons import port_remark, scenario_notes
+from geoskew.study.reasons import action_reasons, port_remark, scenario_notes
 
 
 def scene(before: str, after: str, ports: int = 1) -> Scenario:
@@ -45,3 +46,18 @@ def test_a_switched_port_is_said_once() -> None:
     assert scenario_notes(scene("VH", "VH", ports=2)) == []
     assert port_remark(scene("VH", "VH", ports=2), 1) == "; one port: a switched port is assumed"
     assert scenario_notes(scene("VV", "VV", ports=1)) == []
+
+
+@pytest.mark.parametrize(
+    ("before", "after", "ports", "needed"),
+    [("VV", "VH", 1, True), ("VV", "VH", 2, False), ("VV", "HH", 1, False), ("VH", "HV", 1, False)],
+)
+def test_an_upgrade_says_where_a_second_port_is_needed(
+    before: str, after: str, ports: int, needed: bool
+) -> None:
+    one = scene(before, after, ports)
+    upgrade, leave = action_reasons(one, np.array(["upgrade", "leave"], dtype=object), ports)
+    assert ("a second port is needed" in upgrade) == needed
+    assert "second port" not in leave
+    if needed:
+        assert "a quarter turn" not in upgrade

@@ -111,13 +111,18 @@ def _marked(situation: Situation) -> Array:
     """The shared setting moved to the nearest mark of the feed's scale, degrees.
 
     Marks lie at the scale's zero and whole steps from it; where the zero is not known a crew counts
-    whole steps from the present setting.
+    whole steps from the present setting. Nothing is folded before it is rounded: half a turn on, marks
+    lie elsewhere where the step does not divide 180°.
     """
     step = np.asarray(situation.terminal("scale_step_deg"), dtype=np.float64)
     zero = situation.places.columns.get("scale_zero_deg")
-    base = situation.present if zero is None else np.where(np.isnan(zero), situation.present, zero)
-    turn = fold(situation.policy_shared - base)
-    return base + step * np.rint(turn / step)
+    measured = situation.places.columns.get("setting_deg")
+    start = (
+        situation.present if measured is None else np.where(np.isnan(measured), situation.present, measured)
+    )
+    base = start if zero is None else np.where(np.isnan(zero), start, zero)
+    turn = fold(situation.policy_shared - situation.present)
+    return base + step * np.rint((start + turn - base) / step)
 
 
 @layer(

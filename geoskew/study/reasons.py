@@ -22,15 +22,27 @@ REASONS: Final = {
 }
 
 
+_MORE_PORTS: Final = "; one port cannot serve both new polarisations: a second port is needed"
+
+
 def action_reasons(scenario: Scenario, actions: NDArray[Any], ports: Any) -> NDArray[Any]:
     """A line a site: the reason of its action, and the port to take where that changes."""
     ports = np.broadcast_to(np.asarray(ports), actions.shape)
-    remarks = {count: port_remark(scenario, count) for count in {int(one) for one in np.unique(ports)}}
+    counts = {int(one) for one in np.unique(ports)}
+    remarks = {count: port_remark(scenario, count) for count in counts}
+    more = {count: _MORE_PORTS for count in counts if needs_second_port(scenario, count)}
+    upgrades = remarks | more
     reasons = np.empty(actions.shape, dtype=object)
     for index, name in enumerate(actions):
-        remark = "" if name == "no-sight" else remarks[int(ports[index])]
-        reasons[index] = REASONS[name] + remark
+        remark = (upgrades if name == "upgrade" else remarks)[int(ports[index])]
+        reasons[index] = REASONS[name] + ("" if name == "no-sight" else remark)
     return reasons
+
+
+def needs_second_port(scenario: Scenario, ports: int) -> bool:
+    """Whether new carriers of both linear polarisations would have to share one port, 90° apart."""
+    new = {one.polarisation for one in scenario.carriers_after if is_linear(one)}
+    return ports == 1 and old_port(scenario.carriers_before) is not None and len(new) > 1
 
 
 def port_remark(scenario: Scenario, ports: int) -> str:

@@ -173,7 +173,10 @@ def _tolerance(job: Job, way: Way) -> Line:
         parts.append(f" keeps what is asked (plus is CLOCKWISE from BEHIND); {aim}.")
     before, after = "margin_marked_before", "margin_marked_after"
     mark = job.scale.nearest_mark(way.target, way.present)
-    if job.row.has(before) and job.row.has(after) and way.short == 0.0 and job.feed.reaches(mark):
+    # Between stops that shift the feed by half a turn the margins of the table may be of another mark.
+    of_table = abs(fold(mark - job.scale.nearest_mark(job.present + job.wanted, job.present))) < 1e-6
+    known = job.row.has(before) and job.row.has(after) and of_table
+    if known and way.short == 0.0 and job.feed.reaches(mark):
         shown = job.scale.reading(mark) if job.scale.is_known else fold(mark)
         what = "scale " if job.scale.is_known else "a setting of "
         parts += [f" On the nearest whole mark ({what}", degrees("nearest_mark", shown, signed=True), ") "]
