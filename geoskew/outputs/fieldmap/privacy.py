@@ -11,7 +11,7 @@ import numpy as np
 from geoskew.errors import InputError
 from geoskew.layers import REGISTRY
 from geoskew.outputs.fieldmap.content import MapContent
-from geoskew.outputs.fieldmap.table import as_text
+from geoskew.outputs.fieldmap.table import NUMBERS, as_text
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -100,7 +100,7 @@ def _coarse(table: pd.DataFrame, step: float) -> pd.DataFrame:
         cells = (np.floor(left[name].to_numpy(dtype=np.float64) / step) + 0.5) * step
         left[name] = np.round(np.clip(cells, -most, most), 6)
     for name in left.columns:
-        if str(name).startswith(COARSE) and str(name) in REGISTRY:
+        if str(name).startswith(COARSE) and (str(name) in REGISTRY or str(name) in NUMBERS):
             left[name] = np.round(left[name].to_numpy(dtype=np.float64))
     return left
 

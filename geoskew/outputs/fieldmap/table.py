@@ -23,7 +23,11 @@ if TYPE_CHECKING:
 
 PLACE_DECIMALS: Final = 6
 # Columns that list, filters and symbols work on; the rest waits for a card.
-FIRST: Final = frozenset({"id", "name", "district", "weight", "turn_shared", "turn_realigned", "crew", "day"})
+FIRST: Final = frozenset(
+    {"id", "name", "district", "weight", "turn_shared", "turn_realigned", "turn_to_make", "crew", "day"}
+)
+# Numbers that are no layers, with their units.
+NUMBERS: Final = {"turn_to_make": "deg"}
 
 
 def text_codes(values: Sequence[str]) -> tuple[NDArray[Any], list[str]]:
@@ -111,6 +115,9 @@ def _columns(
                 values = np.where(values == 255, np.nan, values)
             arrays[name], back = number_column(values, layer.unit if not layer.is_class else "dB")
             facts.append({"name": name, "kind": "number", "flag": layer.is_class, **back})
+        elif name in NUMBERS and table[name].dtype.kind == "f":
+            arrays[name], back = number_column(table[name].to_numpy(dtype=np.float64), NUMBERS[name])
+            facts.append({"name": name, "kind": "number", "flag": False, **back})
         else:
             arrays[name], texts[name] = text_codes(as_text(table[name]))
             facts.append({"name": name, "kind": "text"})

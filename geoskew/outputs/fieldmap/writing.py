@@ -128,7 +128,7 @@ def _look(content: MapContent, extent: Extent) -> dict[str, Any]:
             shown.setdefault(contour.layer, REGISTRY[contour.layer])
     tiles = None if content.tiles is None else {"url": content.tiles.url, "thanks": content.tiles.attribution}
     return {
-        "layers": {name: _layer(layer) for name, layer in shown.items()},
+        "layers": {name: {**_layer(layer), **_present(name, content)} for name, layer in shown.items()},
         "classes": [
             {"code": code, "name": names.get(code, str(code)), "colour": CLASS_COLOURS[code], "shape": shape}
             for code, shape in CLASS_SHAPES.items()
@@ -138,6 +138,25 @@ def _look(content: MapContent, extent: Extent) -> dict[str, Any]:
         "names": [[place.name, place.longitude, place.latitude] for place in content.places],
         "tiles": tiles,
     }
+
+
+# Code of a cell without a class.
+NO_CLASS: Final = 255
+
+
+def _present(name: str, content: MapContent) -> dict[str, Any]:
+    """What the picture of a layer really holds: codes of classes, and whether cells lack a value."""
+    for overlay in content.overlays:
+        if overlay.layer.name == name:
+            values = np.asarray(overlay.values)
+            if not overlay.layer.is_class:
+                return {"present": [], "gaps": bool(np.isnan(values).any())}
+            codes = [int(code) for code in np.unique(values[np.isfinite(values)])]
+            return {
+                "present": [code for code in codes if code != 255],
+                "gaps": 255 in codes or not np.isfinite(values).all(),
+            }
+    return {"present": [], "gaps": True}
 
 
 def _layer(layer: Layer) -> dict[str, Any]:

@@ -34,7 +34,7 @@
     if (open !== i) return;
     const number = (name) => (columns.has(name) && columns.get(name).facts.kind === "number" ? columns.get(name).read(i) : NaN);
     const card = fm.byId("card");
-    const parts = sections(i, number, reason(i, columns));
+    const parts = sections(i, number, columns);
     fm.replace(card, header(i), parts.task, parts.turn, parts.margins, parts.directions, coordinates(i), aim(i, number), fm.notesSection(i), everything(i, columns), safety());
     card.hidden = false;
     fm.byId("roll").hidden = true;
@@ -75,15 +75,18 @@
   }
 
   // Why the action is what it is, where the table says so: it may name the port to take.
-  const reason = (i, columns) => (columns.has("action_reason") ? columns.get("action_reason").read(i) : "");
+  const reason = (i, columns) => textOf(i, columns, "action_reason");
+  const textOf = (i, columns, name) => (columns.has(name) && columns.get(name).facts.kind === "text" ? columns.get(name).read(i) : "");
 
-  function sections(i, number, why) {
+  function sections(i, number, columns) {
     const kind = fm.marks.kind(i);
-    const layer = fm.turnLayer(kind.name);
+    const why = reason(i, columns);
+    // The turn within the feed's stops, where the table holds it: that of the job card.
+    const layer = columns.has("turn_to_make") ? "turn_to_make" : fm.turnLayer(kind.name);
     const turn = layer ? number(layer) : NaN;
     return {
       task: fm.element("section", { class: "part task" }, fm.element("h3", {}, kind.name), fm.element("p", {}, fm.task(kind.name)), goal(kind, number), why ? fm.element("p", { class: "quiet" }, `Why: ${why}.`) : null),
-      turn: turnPart(turn, number),
+      turn: turnPart(turn, textOf(i, columns, "turn_remark"), number),
       margins: marginPart(number),
       directions: directionPart(number),
     };
@@ -94,19 +97,23 @@
     return fm.element("p", {}, `New direction: azimuth ${fm.withUnit(number("azimuth_after"), "deg")}, elevation ${fm.withUnit(number("elevation_after"), "deg")}.`);
   }
 
-  function turnPart(turn, number) {
+  function turnPart(turn, remark, number) {
     const words = fm.turnWords(turn);
     const picture = fm.drawWindow(number("window_low"), number("window_high"), number("turn_shared"));
-    if (words === null && picture === null) return null;
+    if (words === null && picture === null && !remark) return null;
     const part = fm.element("section", { class: "part turn" }, fm.element("h3", {}, "Turn of the feed"));
     if (words && words.size) {
       part.append(fm.element("p", { class: "stand" }, words.behind), fm.element("p", { class: "stand" }, words.front));
-    } else if (words) part.append(fm.element("p", {}, "No turn is needed: the present setting is the right one."));
+    } else if (words) part.append(fm.element("p", {}, remark ? "The feed is not turned." : "No turn is needed: the present setting is the right one."));
+    if (remark) part.append(fm.element("p", { class: "stand" }, remark[0].toUpperCase() + remark.slice(1) + "."));
     if (picture) {
       part.append(picture, fm.element("p", { class: "quiet" }, "Band: turns that serve both satellites, from the present setting, seen from behind the dish. Pointer: the shared setting."));
     } else part.append(fm.element("p", { class: "quiet" }, "No one setting serves both satellites here."));
     return part;
   }
+
+  // Near a quarter turn the other way round ends where it should, within 5°: nothing there is reversed.
+  const endsTheSame = (turn) => Math.abs(turn) > 45 && Math.abs(fm.fold(2 * turn)) < 5;
 
   function marginRows(number) {
     const ending = fm.meta.judged === "rain" ? "_rain" : "";
@@ -115,20 +122,22 @@
       { label: "before", values: [margin("margin_before", "before")] },
       { label: "untouched", values: [margin("margin_untouched", "after")] },
       { label: "shared", values: [margin("margin_shared_before", "before"), margin("margin_shared_after", "after")] },
-      { label: "reversed", values: [margin("margin_reversed", "after")] },
+      ...(endsTheSame(number("turn_shared")) ? [] : [{ label: "reversed", values: [margin("margin_reversed", "after")] }]),
       { label: "realigned", values: [margin("margin_realigned", "after")] },
     ];
   }
 
   function marginPart(number) {
-    const picture = fm.drawMargins(marginRows(number), fm.meta.reserve);
+    const rows = marginRows(number);
+    const picture = fm.drawMargins(rows, fm.meta.reserve);
     if (picture === null) return null;
+    const reversed = rows.some(({ label }) => label === "reversed") ? " “Reversed” is what remains when the shared turn is made the wrong way." : "";
     const judged = fm.meta.judged === "rain" ? "in rain at the stated availability" : "in clear sky";
     return fm.element(
       "section", { class: "part" },
       fm.element("h3", {}, "Margins ", fm.element("small", {}, judged)),
       picture,
-      fm.element("p", { class: "quiet" }, `Hollow: old satellite. Full: new satellite. Dashed line: the reserve, ${fm.withUnit(fm.meta.reserve, "dB")}. “Reversed” is what remains when the shared turn is made the wrong way.`)
+      fm.element("p", { class: "quiet" }, `Hollow: old satellite. Full: new satellite. Dashed line: the reserve, ${fm.withUnit(fm.meta.reserve, "dB")}.${reversed}`)
     );
   }
 
@@ -207,7 +216,7 @@
   fm.printCard = async function (i) {
     const columns = await cells();
     const number = (name) => (columns.has(name) && columns.get(name).facts.kind === "number" ? columns.get(name).read(i) : NaN);
-    const parts = sections(i, number, reason(i, columns));
+    const parts = sections(i, number, columns);
     const kind = fm.marks.kind(i);
     fm.replace(
       fm.byId("paper"),

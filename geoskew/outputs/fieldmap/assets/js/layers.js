@@ -83,11 +83,15 @@
     const box = fm.byId("key");
     const wasOpen = box.firstChild ? box.firstChild.open : window.matchMedia("(min-width: 800px)").matches;
     const picture = fm.shownPicture();
-    const marks = fm.meta.classes.filter((kind) => fm.choice && fm.choice.counts.get(kind.code) > 0);
+    const painted = picture && picture.layer === "action" ? picture.record.present : [];
+    const marks = fm.meta.classes.filter((kind) => painted.includes(kind.code) || (fm.choice && fm.choice.counts.get(kind.code) > 0));
     const parts = [];
     if (picture) parts.push(pictureKey(picture));
     if (marks.length) {
       parts.push(fm.element("ul", { class: "key-marks" }, marks.map((kind) => fm.element("li", {}, fm.shapeElement(kind, 18), kind.name))));
+    }
+    if (marks.length && painted.length && fm.sites.count) {
+      parts.push(fm.element("p", { class: "key-note" }, "Areas: the scenario's own terminal. Marks: each site's own equipment."));
     }
     if (marks.length && fm.marks && fm.marks.thinned) {
       parts.push(fm.element("p", { class: "key-note" }, "Where sites crowd, the gravest stands for all."));
@@ -104,16 +108,16 @@
 
   function pictureKey(picture) {
     const { record } = picture;
-    const nothing = fm.element("span", { class: "key-none" }, fm.element("i", { class: "swatch empty" }), fm.none);
+    const nothing = record.gaps ? fm.element("span", { class: "key-none" }, fm.element("i", { class: "swatch empty" }), fm.none) : "";
     // The marks' own key names the actions already.
     if (picture.layer === "action" && fm.sites.count) return fm.element("div", { class: "key-ramp" }, nothing);
     if (record.classes.length) {
-      const rows = record.classes.map(([, name, colour]) => {
+      const rows = record.classes.filter(([code]) => record.present.includes(code)).map(([, name, colour]) => {
         const swatch = fm.element("i", { class: "swatch" });
         swatch.style.background = colour;
         return fm.element("li", {}, swatch, name);
       });
-      return fm.element("ul", { class: "key-classes" }, rows, fm.element("li", {}, nothing));
+      return fm.element("ul", { class: "key-classes" }, rows, record.gaps ? fm.element("li", {}, nothing) : "");
     }
     const bar = fm.element("div", { class: "bar" });
     bar.style.background = `linear-gradient(to right, ${record.ramp.map(([at, colour]) => `${colour} ${at * 100}%`).join(", ")})`;

@@ -71,7 +71,8 @@
     const margin = "margin_untouched" + (meta.judged === "rain" ? "_rain" : "");
     const [shared, anew, untouched] = ["turn_shared", "turn_realigned", margin].map((name) => sites.number(name));
     const names = new Map([...meta.classes, fm.noAction].map((kind) => [kind.code, kind.name]));
-    const turn = (i) => (fm.turnLayer(names.get(sites.action[i])) === "turn_shared" ? shared(i) : anew(i));
+    // The turn within the feed's stops, where the table holds it: that of the job card.
+    const turn = sites.known.has("turn_to_make") ? sites.number("turn_to_make") : (i) => (fm.turnLayer(names.get(sites.action[i])) === "turn_shared" ? shared(i) : anew(i));
     const out = [
       { key: "name", title: "Site", text: (i) => fm.siteTitle(i), compare: (a, b) => fm.collate(fm.siteTitle(a), fm.siteTitle(b)) },
       { key: "action", title: "Action", text: (i) => names.get(sites.action[i]) || fm.noAction.name, compare: (a, b) => sites.action[a] - sites.action[b] },
