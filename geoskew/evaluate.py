@@ -83,8 +83,8 @@ def evaluate(
     Returns
     -------
     dict of str to ndarray
-        float64 (float32 out of compiled loops), or uint8 for classes and flags, in the places' shape. No
-        value: NaN, or 255.
+        float64, or uint8 for classes and flags, in the places' shape. No value: NaN, or 255. Out of
+        compiled loops float32, and two layers that are alike may share one array.
 
     Raises
     ------
@@ -126,6 +126,7 @@ def _values(
     kind = np.uint8 if record.is_class else np.float64 if make is None else np.float32
     shape = situation.places.shape
     if wanted.all():
-        # A copy, since layers may share one array.
+        if make is not None and values.shape == shape and values.dtype == kind:
+            return values
         return np.array(np.broadcast_to(values, shape), dtype=kind)
     return np.array(np.broadcast_to(np.where(wanted, values, none), shape), dtype=kind)

@@ -35,13 +35,17 @@ def compute_block(
 
 
 def _values(scenario: Scenario, inputs: Inputs, grid: Grid, window: Window, names: Sequence[str]) -> Values:
-    if grid.cells >= COMPILED_FROM_CELLS and kernels.ready():
-        return evaluate(scenario, grid.block(window), names, inputs=inputs, compiled=True)
+    compiled = grid.cells >= COMPILED_FROM_CELLS and kernels.ready()
+    # Loops make few intermediate arrays, but rain goes through the plain formulas in any case.
+    height = window.height if compiled and scenario.weather is None else STRIP_ROWS
     values: Values = {}
-    for first in range(0, window.height, STRIP_ROWS):
-        rows = slice(first, min(first + STRIP_ROWS, window.height))
+    for first in range(0, window.height, height):
+        rows = slice(first, min(first + height, window.height))
         strip = Window(window.row + first, window.column, rows.stop - first, window.width)
-        for name, part in evaluate(scenario, grid.block(strip), names, inputs=inputs).items():
+        made = evaluate(scenario, grid.block(strip), names, inputs=inputs, compiled=compiled)
+        if height == window.height and compiled:
+            return made
+        for name, part in made.items():
             if name not in values:
                 # Rasters store 32-bit floats; half the memory of a block in flight.
                 kind = np.float32 if part.dtype == np.float64 else part.dtype

@@ -200,15 +200,20 @@ def weakest_noise(
     `noise`, `leak`, `terms` as in `worst` say which; its C/N is of `of_carrier` (carrier, H, W) less
     `without` (carrier,), the part that is not thermal.
     """
+    width = out.shape[1]
+    bad, chosen, space = np.empty(width), np.empty(width), np.empty(width)
     for i in range(out.shape[0]):
-        for j in range(out.shape[1]):
-            worst_yet, chosen = -1.0, 0
-            for k in range(noise.shape[0]):
-                x = leak[k, i, j] if leak.shape[2] > 1 else leak[k, 0, 0]
-                bad = terms[k, 2] * (terms[k, 0] + noise[k, i, j] + terms[k, 1] * x)
-                if bad > worst_yet:
-                    worst_yet, chosen = bad, k
-            out[i, j] = -decibels(of_carrier[chosen, i, j] - without[chosen])
+        bad[:] = -1.0
+        for k in range(noise.shape[0]):
+            row = leak_part(leak, k, i, 0, space)
+            uplink, crossed, scale = terms[k, 0], terms[k, 1], terms[k, 2]
+            here, value = noise[k, i], of_carrier[k, i]
+            for j in range(width):
+                wrong = scale * (uplink + here[j] + crossed * row[j])
+                chosen[j] = chosen[j] if wrong <= bad[j] else value[j] - without[k]
+                bad[j] = bad[j] if wrong <= bad[j] else wrong
+        for j in range(width):
+            out[i, j] = -decibels(chosen[j])
 
 
 @compiled

@@ -88,15 +88,17 @@ def _double(angle: Array, z: Array, w: Array) -> None:
 
 
 @compiled
-def _begin(near: Array, far: Array, gap: Array, low: Array, high: Array, t: Array) -> None:
+def _begin(near: Array, far: Array, gap: Array, guess: Array, low: Array, high: Array, t: Array) -> None:
     """Bracket of the crossing, from what is wrong before over after at both ends of the arc.
 
-    At an end already where the other moment is worse there, and where there is no value.
+    At an end already where the other moment is worse there, and where there is no value. The search begins
+    at the guess where that is within the bracket.
     """
     for j in range(t.size):
         low[j] = gap[j] if (far[j] <= 1.0) & (near[j] < 1.0) else 0.0
         high[j] = gap[j] if near[j] < 1.0 else 0.0
-        t[j] = 0.5 * (low[j] + high[j])
+        within = (guess[j] > low[j]) & (guess[j] < high[j])
+        t[j] = guess[j] if within else 0.5 * (low[j] + high[j])
 
 
 @compiled
@@ -198,6 +200,8 @@ def shared(
     """
     width = delta.shape[1]
     space = np.empty((15, min(_CHUNK, width)))
+    # The row above is the best guess.
+    last = np.full(width, -1.0)
     for i in range(delta.shape[0]):
         for start in range(0, width, _CHUNK):
             stop = min(start + _CHUNK, width)
@@ -221,7 +225,7 @@ def shared(
                 weight[j] = held[j] / held_after[j]
                 first[j] = weight[j] * first[j] / v[j]
                 second[j] = weight[j] * t[j] / second[j]
-            _begin(first, second, gap, bottom, top, t)
+            _begin(first, second, gap, last[start:stop], bottom, top, t)
             for _ in range(_MOST_STEPS):
                 _double(t, z, w)
                 all_wrong(noise, leak, terms, i, start, z, w, first, rise, row)
@@ -231,24 +235,19 @@ def shared(
                 all_wrong(noise_after, leak_after, terms_after, i, start, z, w, second, fall, row)
                 if _step(t, bottom, top, weight, first, rise, second, fall) == 0:
                     break
+            last[start:stop] = t
             for j in range(n):
                 signed = -t[j] if delta[i, start + j] < 0.0 else t[j]
-                turn[i, start + j] = (
-                    signed + (weight[j] * first[j] - weight[j] * first[j]) + (second[j] - second[j])
-                )
+                # Both are within a step of 6e-5 degrees; NaN stays NaN.
+                bad = max(held[j] * first[j], held_after[j] * second[j])
+                first[j] = bad
+                turn[i, start + j] = signed + (bad - bad) + (second[j] - second[j])
             if low.size:
-                _half_width(noise, leak, terms, i, start, held, first, row)
-                _half_width(noise_after, leak_after, terms_after, i, start, held_after, rise, row)
-                at, lows, highs = turn[i, start:stop], low[i, start:stop], high[i, start:stop]
-                _window(at, delta[i, start:stop], first, rise, lows, highs)
-                _double(t, z, w)
-                all_wrong(noise, leak, terms, i, start, z, w, first, rise, row)
+                _half_width(noise, leak, terms, i, start, held, rise, row)
+                _half_width(noise_after, leak_after, terms_after, i, start, held_after, fall, row)
+                lows, highs = low[i, start:stop], high[i, start:stop]
+                _window(turn[i, start:stop], delta[i, start:stop], rise, fall, lows, highs)
                 for j in range(n):
-                    v[j] = gap[j] - t[j]
-                _double(v, z, w)
-                all_wrong(noise_after, leak_after, terms_after, i, start, z, w, second, fall, row)
-                for j in range(n):
-                    bad = max(held[j] * first[j], held_after[j] * second[j])
-                    missed = not (bad <= _WITHIN)
+                    missed = not (first[j] <= _WITHIN)
                     lows[j] = _NONE if missed else lows[j]
                     highs[j] = _NONE if missed else highs[j]
