@@ -8,6 +8,7 @@ import json
 import re
 import subprocess
 from collections.abc import Callable
+from dataclasses import replace
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
@@ -243,6 +244,33 @@ def test_hostile_text_is_shown_and_nothing_runs(drive: Drive, tmp_path: Path) ->
     assert "<img src=x onerror=alert(1)>" in out["paper"]
     assert out["images"] == 0
     assert out["scripts"] == 2
+
+
+def test_a_card_gives_the_turn_within_the_stops_of_the_feed(drive: Drive, tmp_path: Path) -> None:
+    content = sample.content(6)
+    assert content.sites is not None
+    told = "cannot reach: the feed is fixed; do not force it, report to the planner"
+    table = content.sites.assign(
+        action="turn-at-changeover", turn_realigned=40.0, turn_shared=[88.0, *[20.0] * 5],
+        turn_to_make=[-140.0, -50.0, 40.0, float("nan"), 0.0, 40.0],
+        turn_remark=["the long way round", "exchange the leads", "", told, "exchange the leads", ""],
+    )  # fmt: skip
+    file = tmp_path / "turns.html"
+    write_fieldmap(file, replace(content, sites=table, routes=()))
+    out = drive("hostile", file)
+    texts = [card["text"].split("All values")[0] for card in out["cards"]]
+    assert "satellite: turn anticlockwise by 140.0°. " in texts[0].replace(".Standing", ". Standing")
+    assert "The long way round." in texts[0]
+    assert "turn anticlockwise by 50.0°" in texts[1]
+    assert "Exchange the leads." in texts[1]
+    assert "looking towards the satellite: turn clockwise by 40.0°" in texts[2]
+    assert "turn clockwise by" not in texts[3]
+    assert told[1:] in texts[3]
+    assert "The feed is not turned.Exchange the leads." in texts[4]
+    assert "−140.0" in out["list"]
+    # Near a quarter turn the other way round ends where it should: nothing is called reversed.
+    assert "eversed" not in texts[0]
+    assert "“Reversed” is what remains" in texts[1]
 
 
 def test_prints_one_page_a_card(drive: Drive, page: Path, tmp_path: Path) -> None:

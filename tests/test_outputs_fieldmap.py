@@ -9,6 +9,7 @@ import re
 import struct
 import subprocess
 from collections.abc import Callable
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 from urllib.parse import urlparse
@@ -42,6 +43,7 @@ from geoskew.outputs.fieldmap.overlays import (
     to_mercator,
 )
 from geoskew.outputs.fieldmap.quantise import quantise
+from geoskew.outputs.fieldmap.table import packed_sites
 
 ASSETS = Path(sample.__file__).parents[1] / "geoskew" / "outputs" / "fieldmap" / "assets"
 
@@ -520,6 +522,19 @@ def test_blurred_sites_lose_place_and_directions() -> None:
     assert (left.sites["turn_realigned"] % 1.0 == 0).all()
     assert list(left.routes) == []
     assert "cells of 0.1°" in left.privacy_note
+
+
+def test_the_turn_to_make_is_a_number_of_the_first_block_and_is_blurred_too() -> None:
+    content = sample.content(20)
+    assert content.sites is not None
+    table = content.sites.assign(turn_to_make=np.linspace(-140.3, 40.0, 20), turn_remark="exchange the leads")
+    table.loc[3, "turn_to_make"] = np.nan
+    first, second = (unpacked(text)[0]["facts"] for text in packed_sites(table, judged_in="clear"))
+    assert {one["name"]: one["kind"] for one in first["columns"]}["turn_to_make"] == "number"
+    assert {one["name"]: one["kind"] for one in second["columns"]}["turn_remark"] == "text"
+    left = blurred(replace(content, sites=table), 0.1).sites
+    assert left is not None
+    assert (left["turn_to_make"].dropna() % 1.0 == 0).all()
 
 
 @pytest.mark.parametrize("step", [0.0, -1.0, 11.0, float("nan")])

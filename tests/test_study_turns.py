@@ -43,7 +43,7 @@ CASES = [
     # Two ports and room enough: straight to it, with a shorter way from 45.5° on.
     (row(turn_realigned=-80.0, ports=2), -80.0, -20.0, "shorter with the leads exchanged"),
     # A stop at 70 inside the window (65 to 90): 10° and not 20°.
-    (ahead(feed_high_deg=70.0), 10.0, 70.0, "up to the feed's stop, 10.0° short"),
+    (ahead(feed_high_deg=70.0), 10.0, 70.0, "up to the feed's stop"),
     (ahead(feed_low_deg=40.0, feed_high_deg=62.0), NAN, NAN, "cannot reach"),
     (ahead(feed_fixed=1), NAN, NAN, "cannot reach: the feed is fixed"),
     (row(action="leave"), NAN, NAN, ""),

@@ -86,7 +86,7 @@ def _remark(found: Turning) -> str:
     if way is None:
         return f"cannot reach: {why}; do not force it, report to the planner"
     if way.short > 0.0:
-        return f"up to the feed's stop, {way.short:.1f}° short of the target"
+        return "up to the feed's stop, short of the target but within what does"
     if way.swap:
         return f"exchange the leads: {why}"
     if found.obstacle:

@@ -21,7 +21,7 @@ MEANINGS: Final = {
     "district": "District, as given",
     "access": "Access, as given",
     "action": "What is done there",
-    "turn": "Turn of the feed from its present setting (deg), within its stops, positive clockwise from behind",
+    "turn": "Turn of the feed from its present setting (deg), positive clockwise seen from behind the dish",
     "from_behind": "The turn for a person behind the dish who looks towards the satellite",
     "from_front": "The same turn for a person in front of the dish who looks into it",
     "turn_remark": "What goes with the turn: leads to exchange, a stop, or why there is no turn",
@@ -57,8 +57,7 @@ DECIMALS: Final = 6
 class VisitSheets:
     """The tables of a plan of visits, and what all files of it say.
 
-    ``visits``: crew, day (date), order, id, action, turn (degrees, NaN: none), km_leg, lon, lat and more, such
-    as ``turn_remark``;
+    ``visits``: crew, day (date), order, id, action, turn (degrees, NaN: none), km_leg, lon, lat and more;
     ``days``: crew, day, visits, km, base_*, start_*, end_* (lon, lat), night;
     ``unreached``: id, action, reason, lon, lat;
     ``changeover``: aware.
