@@ -227,6 +227,20 @@ def test_a_crew_that_exchanged_the_leads_as_its_card_says_is_not_accused() -> No
     assert (judged(field).accused == (shown < 0)).all()
 
 
+def test_a_wrong_way_turn_with_the_leads_exchanged_is_told_by_its_setting() -> None:
+    # From 10° to 70°: the card's shorter way is −30° and the leads exchanged; the wrong way ends at 40°.
+    field = Field(np.random.default_rng(3), {"done": 1}, after=True, measured=1.0)
+    field.suits = np.array([70.0])
+    field.meter = type(field.meter)(field.suits)
+    field.plan = replace(field.plan, present=np.array([10.0]), target=np.array([70.0]), ports=np.array([2.0]))
+    # The signal then feels 40° + 90° = 130°.
+    exact = exact_signals(field.suits, np.array([10.0]), np.array([130.0]), np.zeros(1), after=True)
+    field.evidence = Evidence(np.array([40.0]), np.array([0.5]), exact, np.isfinite(exact).astype(float))
+    found = judged(field)
+    assert found.state.tolist() == ["wrong-way"]
+    assert found.accused.all()
+
+
 def test_leads_exchanged_by_mistake_show_in_the_signal_of_two_ports() -> None:
     field = Field(np.random.default_rng(3), {"done": 1}, after=True, measured=1.0)
     plan = replace(field.plan, ports=np.array([2.0]))

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import math
 from datetime import UTC, datetime
+from types import SimpleNamespace
 from typing import Any
 
 import numpy as np
@@ -16,6 +17,8 @@ import pytest
 
 from geoskew.outputs.cards.facts import CardFacts
 from geoskew.outputs.cards.site import job_of
+from geoskew.places import Places
+from geoskew.study.reports.orders import orders_of
 from geoskew.study.turns import turns_of
 
 NAN = math.nan
@@ -84,3 +87,19 @@ def test_the_table_and_the_job_card_say_the_same_turn() -> None:
         way = job_of(site, facts).turning.way
         found = turns_of(pd.DataFrame([site]), site["ports"])
         assert found.turn[0] == pytest.approx(NAN if way is None else way.turn, nan_ok=True)
+
+
+def test_reports_are_judged_against_the_stop_where_the_card_ends_there() -> None:
+    # Targets 80 and 80; a stop at 70 lies inside the window of the first, whose card ends there.
+    table = pd.DataFrame([ahead(feed_high_deg=70.0), ahead(), row(feed_high_deg=95.0)])
+    table = table.assign(setting_shared=80.0, setting_realigned=-80.0)
+    places = Places.of([1.0, 2.0, 3.0], [1.0, 2.0, 3.0], np.nan)
+    study: Any = SimpleNamespace(
+        assessed=SimpleNamespace(table=table),
+        sites=SimpleNamespace(places=places),
+        scenario=SimpleNamespace(terminal=SimpleNamespace(setting_spread_deg=3.0, ports=1)),
+    )
+    orders = orders_of(study)
+    assert orders.shared[:2].tolist() == [70.0, 80.0]
+    assert orders.realigned.tolist() == [-80.0] * 3
+    assert orders.at_changeover.tolist() == [False, False, True]

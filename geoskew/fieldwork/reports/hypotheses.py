@@ -138,8 +138,15 @@ def branches(plan: Plan) -> list[Branch]:
         for goal, often in ((plan.target, 1.0 - share), (other, share))
         for leads, shown in exchanges
     ]
-    for name, (centre, width) in centres.items():
-        found.append(_normal(number[name], centre, width, chance[name], stays=name == "undone"))
+    # A turn of the wrong way with the leads exchanged ends at the same axis, its V mark a quarter turn off.
+    found += [
+        _normal(number["wrong-way"], *centres["wrong-way"], chance["wrong-way"] * leads, shown=shown)
+        for leads, shown in exchanges
+    ]
+    found += [
+        _normal(number[name], *centres[name], chance[name], stays=name == "undone")
+        for name in ("half-turn", "undone")
+    ]
     # Feed a quarter turn off, or leads exchanged: with leads exchanged an inclinometer shows the target.
     off = plan.target + 90.0
     found += [
