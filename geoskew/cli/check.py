@@ -26,5 +26,9 @@ def command(scenario: Path, quiet: bool, verbose: bool, debug: bool) -> int:
         for line in lines:
             click.echo(line)
     if problems:
-        console.say(f"{len(problems)} problem{'s' if len(problems) > 1 else ''} found", quiet=quiet)
+        found = f"{len(problems)} problem{'s' if len(problems) > 1 else ''} found"
+        aside = (
+            "; a run sets these rows aside in rejected.csv and goes on" if lines else "; a run stops at them"
+        )
+        console.say(found + aside, quiet=quiet)
     return 2 if problems else 0

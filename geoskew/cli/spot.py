@@ -66,5 +66,6 @@ def command(
         text, data = spot_budget(scenario, latitude, longitude, height)
     else:
         data = spot_values(scenario, latitude, longitude, height)
-        text = values_as_text(data)
+        known = "height not known" if height is None else f"height {height:g} m"
+        text = f"{latitude:g}, {longitude:g} (latitude, longitude), {known}\n\n{values_as_text(data)}"
     click.echo(json.dumps(data, indent=1, ensure_ascii=False, allow_nan=False) if as_json else text)

@@ -10,6 +10,8 @@ from numpy.typing import NDArray
 from geoskew.situation.ports import is_linear, old_port
 
 if TYPE_CHECKING:
+    import pandas as pd
+
     from geoskew.scenario import Scenario
 
 REASONS: Final = {
@@ -23,6 +25,10 @@ REASONS: Final = {
 
 
 _MORE_PORTS: Final = "; one port cannot serve both new polarisations: a second port is needed"
+
+
+# Identifiers named in one remark.
+MOST_NAMED: Final = 10
 
 
 def action_reasons(scenario: Scenario, actions: NDArray[Any], ports: Any) -> NDArray[Any]:
@@ -79,3 +85,18 @@ def scenario_notes(scenario: Scenario) -> list[str]:
     if _port_is_switched(scenario) and scenario.terminal.ports == 1:
         notes.append("carriers of both polarisations on one port: a switched port is assumed")
     return notes
+
+
+def measured_remarks(table: pd.DataFrame) -> list[str]:
+    """A warning where a measured setting says that a site receives nothing today: a wrong reading."""
+    if "setting_deg" not in table.columns:
+        return []
+    margins = table["margin_before"]
+    doubtful = table.loc[table["setting_deg"].notna() & (margins < 0.0), "id"].tolist()
+    if not doubtful:
+        return []
+    shown = ", ".join(doubtful[:MOST_NAMED]) + (", ..." if len(doubtful) > MOST_NAMED else "")
+    return [
+        f"{len(doubtful)} measured settings leave no margin in clear sky today; measure them again, "
+        f"with the sign as seen from behind the dish: {shown}"
+    ]

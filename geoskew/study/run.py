@@ -22,7 +22,7 @@ from geoskew.study.mapcontent import background, contour_names, map_content, ove
 from geoskew.study.outfiles import folder_of_results, require_free
 from geoskew.study.plan import Planned, can_plan, judged_suffix, plan_of
 from geoskew.study.rasters import contoured, write_study_rasters
-from geoskew.study.reasons import scenario_notes
+from geoskew.study.reasons import measured_remarks, scenario_notes
 from geoskew.study.report import report_of, sensitivity_rows
 
 Report = Callable[[str, float, float], None]
@@ -142,10 +142,12 @@ def _rasters(
     rasters = dict(zip(names, made, strict=True))
     wanted = contoured(None, study)
     report("contours", 0, 1)
-    written.remarks += contours.write_contours(
-        folder / "contours.gpkg",
-        {name: rasters[name] for name in wanted},
-        layers=[REGISTRY[name] for name in wanted],
+    written.remarks += contours.folded(
+        contours.write_contours(
+            folder / "contours.gpkg",
+            {name: rasters[name] for name in wanted},
+            layers=[REGISTRY[name] for name in wanted],
+        )
     )
     report("contours", 1, 1)
     written.files += [*made, folder / "contours.gpkg"]
@@ -161,6 +163,7 @@ def _sites_and_plan(study: Study, folder: Path, written: Written, report: Report
         written.files.append(folder / name)
     tables.write_rejected(folder / "rejected.csv", study.sites.rejected)
     written.files.append(folder / "rejected.csv")
+    written.remarks += measured_remarks(assessed.table)
     planned = None
     if can_plan(study):
         planned = plan_of(study, on_progress=lambda done, total: report("plan of visits", done, total))

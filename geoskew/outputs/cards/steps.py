@@ -6,6 +6,7 @@ Every step that turns something names where to stand and which way to turn.
 from __future__ import annotations
 
 import math
+from datetime import timedelta
 from typing import Final
 
 from geoskew.outputs.cards.facts import CardFacts
@@ -61,7 +62,7 @@ def steps(job: Job, facts: CardFacts) -> tuple[Line, ...]:
     if job.turning.obstacle:
         lines.append((f"{job.turning.obstacle} Do this:",))
     lines += _turn(job, way)
-    lines += _check(job, way)
+    lines += _check(job, way, facts)
     if job.action == "re-aim" or (job.action == "turn-at-changeover" and not facts.same_slot):
         lines.append(_move_dish(job, facts))
     else:
@@ -91,8 +92,8 @@ def _when(job: Job, facts: CardFacts) -> Line:
     if job.action == "preset":
         return (f"Do this AHEAD of the changeover ({moment}); one visit serves both satellites.",)
     if facts.overlap_hours > 0:
-        hours = f"{facts.overlap_hours:g} hours"
-        return (f"Do this AT the changeover ({moment}), within the {hours} in which both satellites work.",)
+        end = facts.changeover + timedelta(hours=facts.overlap_hours)
+        return (f"Do this AT the changeover ({moment}); both satellites work until {end:%d %b %H:%M} UTC.",)
     return (f"Do this AT the changeover ({moment}), once the new satellite carries the traffic, not before.",)
 
 
@@ -131,7 +132,7 @@ def _turn(job: Job, way: Way) -> list[Line]:
     return lines
 
 
-def _check(job: Job, way: Way) -> list[Line]:
+def _check(job: Job, way: Way, facts: CardFacts) -> list[Line]:
     goal = fold(way.target)
     field = job.goal_field if job.turning.is_direct else "target_to_reach"
     parts: list[Part] = [
@@ -156,11 +157,11 @@ def _check(job: Job, way: Way) -> list[Line]:
         reading = degrees("scale_target", job.scale.reading(way.target), signed=True)
         lines.append(("The scale then shows ", reading, "."))
     if job.window is not None and job.turning.keeps_side:
-        lines.append(_tolerance(job, way))
+        lines.append(_tolerance(job, way, facts))
     return lines
 
 
-def _tolerance(job: Job, way: Way) -> Line:
+def _tolerance(job: Job, way: Way, facts: CardFacts) -> Line:
     assert job.window is not None
     low, high = job.window
     parts: list[Part] = []
@@ -180,8 +181,9 @@ def _tolerance(job: Job, way: Way) -> Line:
         shown = job.scale.reading(mark) if job.scale.is_known else fold(mark)
         what = "scale " if job.scale.is_known else "a setting of "
         parts += [f" On the nearest whole mark ({what}", degrees("nearest_mark", shown, signed=True), ") "]
+        sky = "in rain" if facts.judged_in == "rain" else "in clear sky"
         parts += ["the margin is ", decibels(before, job.row.number(before)), " before and "]
-        parts += [decibels(after, job.row.number(after)), " after the changeover."]
+        parts += [decibels(after, job.row.number(after)), f" after, {sky}."]
     return tuple(parts)
 
 

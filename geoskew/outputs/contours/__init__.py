@@ -15,7 +15,7 @@ from geoskew.outputs.contours.levels import levels_of
 from geoskew.outputs.contours.source import Field, read_field
 from geoskew.outputs.contours.trace import Isoline, isolines
 
-__all__ = ["COLUMNS", "Isoline", "has_contours", "isolines", "levels_of", "write_contours"]
+__all__ = ["COLUMNS", "Isoline", "folded", "has_contours", "isolines", "levels_of", "write_contours"]
 
 # name, meaning of the columns of every layer of lines
 COLUMNS = (
@@ -23,6 +23,16 @@ COLUMNS = (
     ("unit", "unit of the level"),
     ("layer", "layer that was contoured"),
 )
+
+
+NOT_CROSSED = ": no contour, as no level is crossed within the region"
+
+
+def folded(notes: Sequence[str]) -> list[str]:
+    """The notes with those on layers without any contour made into one."""
+    bare = [note.removesuffix(NOT_CROSSED) for note in notes if note.endswith(NOT_CROSSED)]
+    rest = [note for note in notes if not note.endswith(NOT_CROSSED)]
+    return rest + ([f"{', '.join(bare)}{NOT_CROSSED}"] if bare else [])
 
 
 def has_contours(layer: Layer) -> bool:
@@ -104,7 +114,7 @@ def _trace(layer: Layer, field: Field, every: float | None, notes: list[str]) ->
         )
     found = isolines(field.values, field.x, field.y, levels, kind=layer.kind, period=layer.period)
     if not found:
-        notes.append(f"{layer.name}: no contour, as no level is crossed within the region")
+        notes.append(f"{layer.name}{NOT_CROSSED}")
     return found, step
 
 

@@ -59,7 +59,7 @@ def only(content: MapContent, wanted: Mapping[str, str]) -> MapContent:
         else:
             raise InputError(
                 f"--only {column}={value}: the assessed sites have no column {column!r}; they have "
-                + ", ".join(str(name) for name in table.columns)
+                + ", ".join([*(("crew", "day") if content.routes else ()), *map(str, table.columns)])
             )
     if not keep.any():
         asked = ", ".join(f"{column}={value}" for column, value in wanted.items())

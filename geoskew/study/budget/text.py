@@ -156,8 +156,9 @@ def _tables(data: dict[str, Any]) -> list[str]:
         if not served:
             continue
         for which, carrier in enumerate(served[0]["carriers"]):
-            of = f"{carrier['name']}, {carrier['polarisation']}, {carrier['frequency_ghz']:g} GHz"
-            title = f"{_MOMENTS[moment].upper()}, {_sky(sky)}: carrier {of}"
+            named = "carrier" if carrier["name"] == "carrier" else f"carrier {carrier['name']}"
+            of = f"{named}, {carrier['polarisation']}, {carrier['frequency_ghz']:g} GHz"
+            title = f"{_MOMENTS[moment].upper()}, {_sky(sky)}: {of}"
             weakest = [entry["policy"] for entry in served if entry["weakest_carrier"] == carrier["name"]]
             several = len(served[0]["carriers"]) > 1
             note = [f"  The weakest carrier for {', '.join(weakest)}."] if weakest and several else []
