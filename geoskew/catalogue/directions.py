@@ -58,14 +58,22 @@ def elevation_after(situation: Situation) -> Array:
 
 
 @layer(
-    unit="km", description="Distance to the old satellite", ramp="level", limits=(35_700.0, 41_700.0), contour_step=250.0
+    unit="km",
+    description="Distance to the old satellite",
+    ramp="level",
+    limits=(35_700.0, 41_700.0),
+    contour_step=250.0,
 )
 def range_before(situation: Situation) -> Array:
     return situation.before.sight.range_m / 1000.0
 
 
 @layer(
-    unit="km", description="Distance to the new satellite", ramp="level", limits=(35_700.0, 41_700.0), contour_step=250.0
+    unit="km",
+    description="Distance to the new satellite",
+    ramp="level",
+    limits=(35_700.0, 41_700.0),
+    contour_step=250.0,
 )
 def range_after(situation: Situation) -> Array:
     return situation.after.sight.range_m / 1000.0

@@ -27,12 +27,26 @@ def _rain(situation: Situation, stand: Stand) -> Array:
     return situation.of_weakest(stand.moment, totals)
 
 
-@layer(unit="dBW", description="EIRP of the old satellite towards the place", ramp="level", limits=(38.0, 56.0), contour_step=1.0, of=("before",))
+@layer(
+    unit="dBW",
+    description="EIRP of the old satellite towards the place",
+    ramp="level",
+    limits=(38.0, 56.0),
+    contour_step=1.0,
+    of=("before",),
+)
 def eirp_before(situation: Situation) -> Array:
     return np.asarray(_of_weakest(situation, BEFORE, "eirp"))
 
 
-@layer(unit="dBW", description="EIRP of the new satellite towards the place", ramp="level", limits=(38.0, 56.0), contour_step=1.0, of=("after",))
+@layer(
+    unit="dBW",
+    description="EIRP of the new satellite towards the place",
+    ramp="level",
+    limits=(38.0, 56.0),
+    contour_step=1.0,
+    of=("after",),
+)
 def eirp_after(situation: Situation) -> Array:
     return np.asarray(_of_weakest(situation, REALIGNED, "eirp"))
 
@@ -63,11 +77,25 @@ def rain_after(situation: Situation) -> Array:
     return _rain(situation, REALIGNED)
 
 
-@layer(unit="dB", description="C/N before the changeover in clear sky with a perfectly set feed", ramp="level", limits=(0.0, 24.0), contour_step=1.0, of=("before",))
+@layer(
+    unit="dB",
+    description="C/N before the changeover in clear sky with a perfectly set feed",
+    ramp="level",
+    limits=(0.0, 24.0),
+    contour_step=1.0,
+    of=("before",),
+)
 def cn_before(situation: Situation) -> Array:
     return _of_weakest(situation, BEFORE, "carrier_to_noise")
 
 
-@layer(unit="dB", description="C/N after the changeover in clear sky with dish and feed perfectly set", ramp="level", limits=(0.0, 24.0), contour_step=1.0, of=("after",))
+@layer(
+    unit="dB",
+    description="C/N after the changeover in clear sky with dish and feed perfectly set",
+    ramp="level",
+    limits=(0.0, 24.0),
+    contour_step=1.0,
+    of=("after",),
+)
 def cn_after(situation: Situation) -> Array:
     return _of_weakest(situation, REALIGNED, "carrier_to_noise")

@@ -184,7 +184,7 @@ def relative_gain(
     if pattern == "fast-roll-off" and minor_deg < FAST_ROLL_OFF_NARROWEST_DEG:
         raise InputError(
             f"beam: minor_deg {minor_deg:g} is below {FAST_ROLL_OFF_NARROWEST_DEG}, the narrowest beam of"
-            " the fast roll-off pattern; take pattern = \"gaussian\" or \"appendix-30\""
+            ' the fast roll-off pattern; take pattern = "gaussian" or "appendix-30"'
         )
     width = half_power_width(
         position_angle, major_deg=major_deg, minor_deg=minor_deg, orientation_deg=orientation_deg

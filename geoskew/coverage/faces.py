@@ -48,9 +48,7 @@ def refuse_crossings(lines: Sequence[Feature]) -> None:
     """
     import shapely
 
-    problems = [
-        f"{line} crosses itself; mend the line" for line in lines if not line.geometry.is_simple
-    ]
+    problems = [f"{line} crosses itself; mend the line" for line in lines if not line.geometry.is_simple]
     tree = shapely.STRtree([line.geometry for line in lines])
     pairs = tree.query([line.geometry for line in lines], predicate="intersects")
     for first, second in zip(*pairs, strict=True):

@@ -10,9 +10,7 @@ from numpy.typing import ArrayLike, NDArray
 Array = NDArray[np.float64]
 
 
-def cell_position(
-    x: ArrayLike, y: ArrayLike, *, inverse: Sequence[float]
-) -> tuple[Array, Array]:
+def cell_position(x: ArrayLike, y: ArrayLike, *, inverse: Sequence[float]) -> tuple[Array, Array]:
     """Fractional column and row of points, counted between the centres of cells.
 
     Parameters

@@ -44,9 +44,7 @@ def arcs(curves: Sequence[Curve], level: Array) -> tuple[list[Array], list[Array
     return [middle for middle, _ in found], [half for _, half in found]
 
 
-def in_all(
-    setting: Array, middles: Sequence[Array], halves: Sequence[Array], skip: int
-) -> NDArray[np.bool_]:
+def in_all(setting: Array, middles: Sequence[Array], halves: Sequence[Array], skip: int) -> NDArray[np.bool_]:
     """Whether a setting is in every arc but number `skip` (where it is an end, rounding must not decide)."""
     good = np.ones(np.shape(setting), dtype=bool)
     for number, (middle, half) in enumerate(zip(middles, halves, strict=True)):
