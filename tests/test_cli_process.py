@@ -131,7 +131,10 @@ def test_an_interrupt_leaves_nothing_half_written(command: str, tmp_path: Path) 
         [command, str(path), "--out", str(out)], lambda: any(out.rglob("*.part-*/*.tif"))
     )
     assert status == 130
-    assert said.splitlines()[-1] == "geoskew: interrupted; what was finished is whole, the rest is missing, nothing half-written is left"
+    assert (
+        said.splitlines()[-1]
+        == "geoskew: interrupted; what was finished is whole, the rest is missing, nothing half-written is left"
+    )
     assert "Traceback" not in said
     assert contents(tmp_path) == before
 

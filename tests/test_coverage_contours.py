@@ -179,7 +179,9 @@ def test_polygons_mean_the_same_as_lines():
     for drawn in (areas, bands):
         np.testing.assert_allclose(
             # The lattice of the fit follows from the lines and falls a little differently.
-            contours.fit(drawn, levels).eirp(longitude, latitude), expected, atol=0.02
+            contours.fit(drawn, levels).eirp(longitude, latitude),
+            expected,
+            atol=0.02,
         )
 
 
@@ -239,15 +241,27 @@ def square(size, middle=0.0):
 @pytest.mark.parametrize(
     ("geometries", "levels", "message"),
     [
-        ([square(9), square(6), square(3, 5.0)], [47, 48, 49], r"feature 2 \(48 dBW\) and feature 3 \(49 dBW\)"),
+        (
+            [square(9), square(6), square(3, 5.0)],
+            [47, 48, 49],
+            r"feature 2 \(48 dBW\) and feature 3 \(49 dBW\)",
+        ),
         ([square(9).exterior, square(6).exterior, square(3, 5.0).exterior], [47, 48, 49], "meet near"),
         ([square(9), square(6), square(3)], [47, 46, 48], r"feature 2 \(46 dBW\) lies within feature 1"),
         ([square(9).exterior, square(6).exterior, square(3).exterior], [47, 46, 48], "levels out of order"),
-        ([square(9).exterior, square(6).exterior, square(3).exterior], [47, 49, 48], "without a contour of 48"),
+        (
+            [square(9).exterior, square(6).exterior, square(3).exterior],
+            [47, 49, 48],
+            "without a contour of 48",
+        ),
         ([square(9), square(6)], [47, float("nan")], "feature 2: level nan is not a number"),
         ([square(9), shapely.Polygon([(0, 0), (1, 1), (2, 2)])], [47, 48], "feature 2.*encloses no area"),
         ([square(9), shapely.Polygon([(0, 0), (2, 2), (2, 0), (0, 3)])], [47, 48], "not a clean polygon"),
-        ([square(9), shapely.box(4e5, 5e6, 5e5, 6e6)], [47, 48], r"feature 2.*not a longitude and a latitude"),
+        (
+            [square(9), shapely.box(4e5, 5e6, 5e5, 6e6)],
+            [47, 48],
+            r"feature 2.*not a longitude and a latitude",
+        ),
         ([square(9), shapely.Point(0, 0)], [47, 48], "feature 2.*is a Point"),
         ([square(9), None], [47, 48], "feature 2.*no geometry"),
         ([square(9), square(6)], [47, 47], "at least two levels"),

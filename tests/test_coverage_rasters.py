@@ -76,7 +76,9 @@ def test_no_value_outside_nor_beside_missing_cells(tmp_path, monkeypatch, kept):
 
 def test_other_reference_system(tmp_path):
     x, y = cells(4e5, 5.4e6, 1e4, 50, 50)
-    path = write(tmp_path / "utm.tif", plane(x / 1e5, y / 1e5), west=4e5, north=5.4e6, step=1e4, crs="EPSG:32633")
+    path = write(
+        tmp_path / "utm.tif", plane(x / 1e5, y / 1e5), west=4e5, north=5.4e6, step=1e4, crs="EPSG:32633"
+    )
     longitude, latitude = np.array([15.2, 16.0, 18.5]), np.array([45.0, 47.1, 46.2])
     east, north = pyproj.Transformer.from_crs(4326, 32633, always_xy=True).transform(longitude, latitude)
     values = raster_field(path).eirp(longitude, latitude)

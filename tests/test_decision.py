@@ -122,10 +122,10 @@ def test_one_flank_is_a_normal_distribution(spread):
     end = zero_margin(one)
     for short in (-6.0, -1.0, 0.0, 2.0, 5.0):
         intended = 40.0 - end + short
-        expected = 100.0 * (
-            stats.norm.cdf(-short / spread) + stats.norm.sf((2.0 * end - short) / spread)
+        expected = 100.0 * (stats.norm.cdf(-short / spread) + stats.norm.sf((2.0 * end - short) / spread))
+        assert float(fail_probability([one], intended, spread_deg=spread)) == pytest.approx(
+            expected, abs=1e-6
         )
-        assert float(fail_probability([one], intended, spread_deg=spread)) == pytest.approx(expected, abs=1e-6)
 
 
 @pytest.mark.parametrize("spread", [3.0, 20.0, 45.0])
@@ -181,7 +181,10 @@ def weaker(one, decibels):
 CARRIERS = {
     "one": [response(suits=12.0, noise_db=9.0)],
     "several": [response(suits=12.0, noise_db=9.0), response(suits=3.0, noise_db=9.5, crossed=0.3)],
-    "two ports": [response(suits=5.0, noise_db=14.0), response(suits=-85.0, noise_db=14.0, crossed=0.0, leak=0.4)],
+    "two ports": [
+        response(suits=5.0, noise_db=14.0),
+        response(suits=-85.0, noise_db=14.0, crossed=0.0, leak=0.4),
+    ],
     "phasors": [response(suits=8.0, noise_db=12.0, leak=0.08, phasors=True)],
     "circular": [response(suits=8.0, noise_db=6.8, fixed=0.0)],
     "neighbour": [
@@ -231,5 +234,7 @@ def test_shapes_and_spread_of_each_place():
 
 def test_more_spread_of_a_good_feed_fails_more():
     one = response(suits=4.0, noise_db=9.0)
-    chances = [float(fail_probability([one], 0.0, spread_deg=spread)) for spread in (0.5, 2.0, 5.0, 10.0, 20.0)]
+    chances = [
+        float(fail_probability([one], 0.0, spread_deg=spread)) for spread in (0.5, 2.0, 5.0, 10.0, 20.0)
+    ]
     assert chances == sorted(chances)

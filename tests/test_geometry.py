@@ -137,7 +137,9 @@ def test_against_skyfield():
 @pytest.mark.parametrize("row", cases("separation.csv"), ids=by_case)
 def test_published_separation(row):
     directions = [
-        geometry.line_of_sight(row["lon_deg"], row["lat_deg"], 0.0, geometry.satellite_position(row[key])).direction
+        geometry.line_of_sight(
+            row["lon_deg"], row["lat_deg"], 0.0, geometry.satellite_position(row[key])
+        ).direction
         for key in ("sat1_lon_deg", "sat2_lon_deg")
     ]
     # Five decimals at least, four in the first case.
@@ -149,7 +151,8 @@ def test_separation_by_the_law_of_cosines():
     longitude, latitude = rng.uniform(-50.0, 50.0, 200), rng.uniform(-60.0, 60.0, 200)
     for apart in (1e-3, 0.6, 30.0):
         sights = [
-            geometry.line_of_sight(longitude, latitude, 0.0, geometry.satellite_position(slot)) for slot in (0.0, apart)
+            geometry.line_of_sight(longitude, latitude, 0.0, geometry.satellite_position(slot))
+            for slot in (0.0, apart)
         ]
         one, other = (sight.range_m for sight in sights)
         chord = 2.0 * constants.GEOSTATIONARY_RADIUS_M * np.sin(np.deg2rad(apart) / 2.0)
@@ -202,7 +205,9 @@ def test_poles():
     polar = constants.EARTH_EQUATORIAL_RADIUS_M * (1.0 - constants.EARTH_FLATTENING)
     expected = np.rad2deg(np.arctan2(-polar, constants.GEOSTATIONARY_RADIUS_M))
     for latitude in (-90.0, 90.0):
-        azimuth, elevation, _ = look(np.linspace(-180.0, 180.0, 9), latitude, 0.0, geometry.satellite_position(25.0))
+        azimuth, elevation, _ = look(
+            np.linspace(-180.0, 180.0, 9), latitude, 0.0, geometry.satellite_position(25.0)
+        )
         np.testing.assert_allclose(elevation, expected, atol=1e-9)
         assert np.all(np.isfinite(azimuth))
 
@@ -216,7 +221,9 @@ def test_both_names_of_the_antimeridian():
 
 
 def test_below_the_horizon():
-    azimuth, elevation, range_m = look([100.0, 180.0, -120.0], [10.0, 0.0, -45.0], 0.0, geometry.satellite_position(0.0))
+    azimuth, elevation, range_m = look(
+        [100.0, 180.0, -120.0], [10.0, 0.0, -45.0], 0.0, geometry.satellite_position(0.0)
+    )
     assert np.all(elevation < 0.0)
     assert elevation[1] == pytest.approx(-90.0, abs=1e-9)
     assert np.all(np.isfinite(azimuth))

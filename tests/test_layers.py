@@ -58,7 +58,13 @@ def scene(kind: str):
         "several": {
             "carrier": [
                 {**CARRIER, "name": "one", "polarisation": "V"},
-                {**CARRIER, "name": "two", "polarisation": "H", "uplink_cn_db": 22.0, "required_es_n0_db": 4.0},
+                {
+                    **CARRIER,
+                    "name": "two",
+                    "polarisation": "H",
+                    "uplink_cn_db": 22.0,
+                    "required_es_n0_db": 4.0,
+                },
             ],
             "neighbour": [{"longitude_deg": -63.2, "eirp_dbw": 49.0, "polarisation": "H", "name": "near"}],
             "terminal": {"pointing_error_deg": 0.2},
@@ -172,7 +178,9 @@ def test_values_exist_exactly_where_the_satellites_serve(kind):
     assert not serves["before"].all()
     assert not missing(values["action"]).any()
     for name, array in values.items():
-        wanted = np.logical_and.reduce([np.ones_like(serves["before"]), *(serves[one] for one in REGISTRY[name].of)])
+        wanted = np.logical_and.reduce(
+            [np.ones_like(serves["before"]), *(serves[one] for one in REGISTRY[name].of)]
+        )
         gone = missing(array)
         assert gone[~wanted].all(), name
         if name not in WITH_A_WINDOW:
@@ -262,7 +270,9 @@ def test_unknown_and_missing_layers():
         chosen(scene("plain"), ["skew_befor"])
     with pytest.raises(InputError, match=r"needs \[weather\]"):
         chosen(scene("plain"), ["rain_before"])
-    sites_only = next(name for name, record in REGISTRY.items() if record.where == "sites" and not record.needs)
+    sites_only = next(
+        name for name, record in REGISTRY.items() if record.where == "sites" and not record.needs
+    )
     with pytest.raises(InputError, match="site lists only"):
         chosen(scene("plain"), [sites_only], sites=False)
     assert chosen(scene("plain"), ["skew_after", "skew_after"]) == ("skew_after",)

@@ -102,7 +102,9 @@ def test_arc_against_a_dense_scan(kind, level):
     one = make(kind, seed=3)
     middle, half = one.arc(level)
     offsets = np.arange(-90.0, 90.0, 0.05)
-    column = {key: np.broadcast_to(getattr(one, key), (COUNT,))[:, None] for key in ("suits", "noise", "leak")}
+    column = {
+        key: np.broadcast_to(getattr(one, key), (COUNT,))[:, None] for key in ("suits", "noise", "leak")
+    }
     neighbours = {
         key: np.broadcast_to(getattr(one, key), (COUNT,))[:, None]
         for key in ("neighbour_even", "neighbour_cosine", "neighbour_sine")

@@ -118,7 +118,9 @@ def test_published_skew(row):
 def test_published_frames(row):
     aim = None if row["aim_lat_deg"] is None else (row["aim_lon_deg"], row["aim_lat_deg"])
     # γ counter-clockwise from the equatorial plane; V stands at 90° and a tilt turns it further.
-    value = skew(row["lon_deg"], row["lat_deg"], slot=row["sat_lon_deg"], tilt=row["gamma_deg"] - 90.0, aim=aim)
+    value = skew(
+        row["lon_deg"], row["lat_deg"], slot=row["sat_lon_deg"], tilt=row["gamma_deg"] - 90.0, aim=aim
+    )
     assert_same_angle(value, row["skew_deg"], 5.1e-5)
 
 
@@ -223,7 +225,11 @@ def test_against_an_independent_derivation():
         assert_same_angle(polarisation.seen_in_dish(arriving, towards, dish), expected_in_dish, 1e-7)
 
 
-PLACES = {"latitude": st.floats(-80.0, 80.0), "east_of_it": st.floats(0.05, 80.0), "slot": st.floats(-180.0, 180.0)}
+PLACES = {
+    "latitude": st.floats(-80.0, 80.0),
+    "east_of_it": st.floats(0.05, 80.0),
+    "slot": st.floats(-180.0, 180.0),
+}
 away_from_equator = settings(max_examples=60, deadline=None)
 
 
@@ -257,7 +263,9 @@ def test_only_the_difference_of_longitudes_counts(latitude, east_of_it, slot, sh
 @given(**PLACES, tilt=st.floats(-90.0, 90.0))
 def test_with_equal_slots_the_dish_sees_the_skew(latitude, east_of_it, slot, tilt):
     x = slot + east_of_it
-    assert_same_angle(seen(x, latitude, dish=slot, slot=slot, tilt=tilt), skew(x, latitude, slot=slot, tilt=tilt), 1e-9)
+    assert_same_angle(
+        seen(x, latitude, dish=slot, slot=slot, tilt=tilt), skew(x, latitude, slot=slot, tilt=tilt), 1e-9
+    )
 
 
 def test_attitude_of_an_inclined_satellite():
@@ -354,8 +362,12 @@ def test_even_and_periodic(angle, isolation, phasors):
     leak = (polarisation.amplitude_sum if phasors else polarisation.power_sum)(isolation, 25.0)
     here = float(polarisation.discrimination(angle, leak, phasors=phasors))
     for same in (-angle, angle + 180.0, angle - 360.0):
-        assert float(polarisation.discrimination(same, leak, phasors=phasors)) == pytest.approx(here, abs=1e-8)
-        assert float(polarisation.mismatch(same)) == pytest.approx(float(polarisation.mismatch(angle)), abs=1e-8)
+        assert float(polarisation.discrimination(same, leak, phasors=phasors)) == pytest.approx(
+            here, abs=1e-8
+        )
+        assert float(polarisation.mismatch(same)) == pytest.approx(
+            float(polarisation.mismatch(angle)), abs=1e-8
+        )
     assert here <= float(polarisation.discrimination(0.0, leak, phasors=phasors)) + 1e-9
 
 

@@ -58,7 +58,8 @@ def plain_excess(curves, settings):
             wanted = np.cos(d) ** 2 + leak * np.sin(d) ** 2
             crossed = np.sin(d) ** 2 + leak * np.cos(d) ** 2
         noise, offset, uplink, even, cosine, sine = (
-            np.broadcast_to(np.asarray(getattr(one, name), dtype=float), held.shape)[:, None] for name in TERMS
+            np.broadcast_to(np.asarray(getattr(one, name), dtype=float), held.shape)[:, None]
+            for name in TERMS
         )
         others = even + cosine * np.cos(2.0 * d) + sine * np.sin(2.0 * d)
         with np.errstate(divide="ignore"):
@@ -73,7 +74,9 @@ def scan(curves, count):
     excess = plain_excess(curves, coarse)
     peak = (excess >= np.roll(excess, 1, axis=1)) & (excess >= np.roll(excess, -1, axis=1))
     best = np.argsort(np.where(peak, excess, -np.inf), axis=1)[:, -3:]
-    fine = (np.take_along_axis(coarse, best, axis=1)[:, :, None] + np.arange(-0.11, 0.11, 0.001)).reshape(count, -1)
+    fine = (np.take_along_axis(coarse, best, axis=1)[:, :, None] + np.arange(-0.11, 0.11, 0.001)).reshape(
+        count, -1
+    )
     excess = plain_excess(curves, fine)
     at = np.argmax(excess, axis=1)[:, None]
     return np.take_along_axis(fine, at, axis=1)[:, 0], np.take_along_axis(excess, at, axis=1)[:, 0]
@@ -111,7 +114,9 @@ def assert_window(curves, present, shared):
     for index in np.flatnonzero(has)[:25]:
         one = [Curve(pick(curve.response, index), curve.held_to[index : index + 1]) for curve in curves]
         for side, end in ((-1.0, shared.low[index]), (1.0, shared.high[index])):
-            good = plain_excess(one, (present[index] + shared.turn[index] + side * steps)[None, :])[0] >= -1e-9
+            good = (
+                plain_excess(one, (present[index] + shared.turn[index] + side * steps)[None, :])[0] >= -1e-9
+            )
             if good.all():
                 assert end == 90.0 * side
             else:
@@ -121,7 +126,16 @@ def assert_window(curves, present, shared):
 
 def pick(one, index):
     """The response of one place."""
-    keys = ("suits", "noise", "crossed", "leak", "uplink", "neighbour_even", "neighbour_cosine", "neighbour_sine")
+    keys = (
+        "suits",
+        "noise",
+        "crossed",
+        "leak",
+        "uplink",
+        "neighbour_even",
+        "neighbour_cosine",
+        "neighbour_sine",
+    )
     chosen = {}
     for key in keys:
         value = np.asarray(getattr(one, key), dtype=float)
@@ -172,7 +186,11 @@ def test_several_carriers():
 def test_carriers_that_suit_alike():
     # Equal angles that are not one array, and rounded apart by a hair: rounding must not lose the places.
     before, after, responses = two_moments(6, widest=60.0)
-    twins = [response(fold(before + 180.0), 15.0), response(after.copy(), 14.0), response(fold(after - 180.0), 13.0)]
+    twins = [
+        response(fold(before + 180.0), 15.0),
+        response(after.copy(), 14.0),
+        response(fold(after - 180.0), 13.0),
+    ]
     assert_is_the_best(curves_of([responses[0], twins[0], responses[1], *twins[1:]], (0, 0, 1, 1, 1)), before)
 
 
@@ -317,7 +335,9 @@ def test_no_good_setting():
 def test_places_without_a_satellite():
     suits = np.array([0.0, np.nan, 10.0])
     noise = np.array([14.0, 14.0, np.nan])
-    shared = shared_setting(curves_of([response(np.zeros(3), 14.0), response(suits, noise)], (0, 1)), np.zeros(3))
+    shared = shared_setting(
+        curves_of([response(np.zeros(3), 14.0), response(suits, noise)], (0, 1)), np.zeros(3)
+    )
     for values in shared.__dict__.values():
         assert np.isnan(values).tolist() == [False, True, True]
 
@@ -344,6 +364,7 @@ def test_grid_equals_list():
     curves = curves_of(responses, (0, 1))
     flat = shared_setting(curves, before)
     shape = (10, 25)
+
     def folded_up(one):
         arrays = {f.name: getattr(one, f.name) for f in fields(one) if np.ndim(getattr(one, f.name)) == 1}
         return replace(one, **{name: array.reshape(shape) for name, array in arrays.items()})
@@ -359,9 +380,7 @@ def test_order_of_places_does_not_matter():
     before, _, responses = two_moments(12)
     order = np.random.default_rng(13).permutation(FEW)
     flat = shared_setting(curves_of(responses, (0, 1)), before)
-    mixed = shared_setting(
-        curves_of([reorder(one, order) for one in responses], (0, 1)), before[order]
-    )
+    mixed = shared_setting(curves_of([reorder(one, order) for one in responses], (0, 1)), before[order])
     # The search ends for all places together, so that digits beyond its tolerance may differ.
     np.testing.assert_allclose(mixed.turn, flat.turn[order], atol=1e-6)
 

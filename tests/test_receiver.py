@@ -42,9 +42,7 @@ def test_worked_figure_of_merit():
     # Hand-computed: 1.2 m, 12 GHz, NF 0.7 dB, feed loss 0.1 dB, ground 10 K. Clear sky 0.12 dB with the
     # medium at a surface of 288.15 K (P.618-14 eq. 70); then 5 dB of rain on top with the medium at 275 K.
     terminal = {"noise_figure_db": 0.7, "feed_loss_db": 0.1, "ground_noise_k": 10.0}
-    clear = receiver.system_noise_temperature(
-        0.12, medium_k=receiver.medium_temperature(288.15), **terminal
-    )
+    clear = receiver.system_noise_temperature(0.12, medium_k=receiver.medium_temperature(288.15), **terminal)
     rain = receiver.system_noise_temperature(5.12, **terminal)
     gain = receiver.antenna_gain(1.2, efficiency=0.65, frequency_ghz=12.0)
     assert float(clear) == pytest.approx(76.871, abs=1e-3)

@@ -98,9 +98,19 @@ def clear_sky_gas(scene, moment, latitude, longitude):
     "changes",
     [
         {},
-        {"incoming": {"longitude_deg": -66.9, "eirp_dbw": 47.0, "isolation_db": 27.0, "eirp_offset_db": -1.5}},
+        {
+            "incoming": {
+                "longitude_deg": -66.9,
+                "eirp_dbw": 47.0,
+                "isolation_db": 27.0,
+                "eirp_offset_db": -1.5,
+            }
+        },
         {"carrier": {"uplink_cn_db": 22.0, "adjacent_ci_db": 19.0, "crossed_offset_db": 2.0}},
-        {"carrier": {"crossed": False, "implementation_loss_db": 1.2}, "terminal": {"pointing_error_deg": 0.4}},
+        {
+            "carrier": {"crossed": False, "implementation_loss_db": 1.2},
+            "terminal": {"pointing_error_deg": 0.4},
+        },
         {
             "terminal": {"dish_m": 1.2, "feed_loss_db": 0.3, "radome_loss_db": 0.5, "ground_noise_k": 18.0},
             "outgoing": {"aim": {"lon_deg": -60.0, "lat_deg": -30.0}},
@@ -137,7 +147,9 @@ def test_margins_against_a_budget_on_paper(changes):
 def test_half_way_and_the_wrong_way():
     # Common practice, no source: tilt 21° to 0° at one slot with equal power: 10.5° anticlockwise for all, and
     # one and a half of the 21° where it was made the wrong way.
-    found = at(scenario(), *PLACES, "turn_shared", "turn_realigned", "mismatch_reversed", "mismatch_untouched")
+    found = at(
+        scenario(), *PLACES, "turn_shared", "turn_realigned", "mismatch_reversed", "mismatch_untouched"
+    )
     np.testing.assert_allclose(found["turn_shared"], -10.5, atol=1e-4)
     np.testing.assert_allclose(found["turn_realigned"], -21.0, atol=1e-9)
     np.testing.assert_allclose(
@@ -155,7 +167,9 @@ def test_measured_setting():
     places = (np.full(3, PLACE[0]), np.full(3, PLACE[1]))
     found = at(scenario(), *places, *names, setting_deg=measured)
     present = np.where(np.isnan(measured), found["skew_before"], fold(measured))
-    np.testing.assert_allclose(fold(found["setting_realigned"] - present - found["turn_realigned"]), 0.0, atol=1e-9)
+    np.testing.assert_allclose(
+        fold(found["setting_realigned"] - present - found["turn_realigned"]), 0.0, atol=1e-9
+    )
     np.testing.assert_allclose(fold(found["setting_shared"] - present - found["turn_shared"]), 0.0, atol=1e-9)
     # Where it came from does not change where it should go.
     np.testing.assert_allclose(found["setting_shared"], found["setting_shared"][0], atol=1e-4)
@@ -194,7 +208,14 @@ def test_other_polarisation_on_a_single_port():
     # V before, H after, one port: the feed turns a quarter turn more; the frames of the satellites stay.
     swapped = scenario(incoming={"carrier": {"polarisation": "H"}})
     plain = scenario()
-    names = ("skew_after", "seen_after", "turn_realigned", "setting_realigned", "margin_realigned", "turn_shared")
+    names = (
+        "skew_after",
+        "seen_after",
+        "turn_realigned",
+        "setting_realigned",
+        "margin_realigned",
+        "turn_shared",
+    )
     here, there = at(swapped, *PLACES, *names), at(plain, *PLACES, *names)
     np.testing.assert_array_equal(here["skew_after"], there["skew_after"])
     np.testing.assert_array_equal(here["seen_after"], there["seen_after"])
@@ -273,13 +294,12 @@ def test_actions_of_circular_carriers():
     for before, after in (("L", "L"), ("L", "R"), ("V", "L"), ("R", "H")):
         for slot in (-66.2, -64.9, -66.8):
             for required in (4.0, 9.0, 13.0, 18.0):
-                scene = circular(
-                    before, after, incoming={"longitude_deg": slot}, terminal={"dish_m": 1.2}
-                )
+                scene = circular(before, after, incoming={"longitude_deg": slot}, terminal={"dish_m": 1.2})
                 scene = scene.model_copy(
                     update={
                         "carriers_after": tuple(
-                            one.model_copy(update={"required_es_n0_db": required}) for one in scene.carriers_after
+                            one.model_copy(update={"required_es_n0_db": required})
+                            for one in scene.carriers_after
                         )
                     }
                 )
@@ -290,7 +310,9 @@ def test_actions_of_circular_carriers():
 @pytest.mark.parametrize(("before", "after"), [("V", "L"), ("H", "R"), ("L", "V"), ("R", "H")])
 def test_linear_to_circular_and_back(before, after):
     scene = circular(before, after)
-    found = at(scene, *PLACES, "mismatch_untouched", "discrimination_untouched", "turn_shared", "setting_shared")
+    found = at(
+        scene, *PLACES, "mismatch_untouched", "discrimination_untouched", "turn_shared", "setting_shared"
+    )
     np.testing.assert_allclose(found["mismatch_untouched"], 10.0 * math.log10(2.0), atol=1e-9)
     np.testing.assert_array_equal(found["discrimination_untouched"], 0.0)
     assert np.isnan(found["turn_shared"]).all()
@@ -305,9 +327,18 @@ def test_linear_to_circular_and_back(before, after):
 
 def test_the_margin_is_that_of_the_weakest_carrier():
     first = {**CARRIER, "name": "one", "polarisation": "V", "crossed_offset_db": -4.0}
-    second = {**CARRIER, "name": "two", "polarisation": "V", "symbol_rate_mbaud": 8.0, "required_es_n0_db": 13.0}
+    second = {
+        **CARRIER,
+        "name": "two",
+        "polarisation": "V",
+        "symbol_rate_mbaud": 8.0,
+        "required_es_n0_db": 13.0,
+    }
     together = at(scenario(carrier=[first, second]), *PLACES, *POLICIES, "cn_after", "margin_realigned")
-    alone = [at(scenario(carrier=[one]), *PLACES, *POLICIES, "cn_after", "margin_realigned") for one in (first, second)]
+    alone = [
+        at(scenario(carrier=[one]), *PLACES, *POLICIES, "cn_after", "margin_realigned")
+        for one in (first, second)
+    ]
     for name in ("margin_untouched", "margin_realigned"):
         np.testing.assert_allclose(together[name], np.minimum(alone[0][name], alone[1][name]), atol=1e-9)
     weaker = np.where(alone[0]["margin_realigned"] < alone[1]["margin_realigned"], 0, 1)
@@ -317,14 +348,18 @@ def test_the_margin_is_that_of_the_weakest_carrier():
 
 def test_one_setting_serves_all_carriers():
     first = {**CARRIER, "name": "one", "polarisation": "V"}
-    second = {**CARRIER, "name": "two", "polarisation": "H", "required_es_n0_db": 11.0, "crossed_offset_db": 3.0}
+    second = {
+        **CARRIER,
+        "name": "two",
+        "polarisation": "H",
+        "required_es_n0_db": 11.0,
+        "crossed_offset_db": 3.0,
+    }
     scene = scenario(carrier=[first, second])
     found = at(scene, *PLACE, "margin_shared_before", "margin_shared_after", "window_low", "window_high")
     low, high = float(found["window_low"]), float(found["window_high"])
     assert low < -10.0 < -5.0 < high or math.isnan(low)
-    each = [
-        at(scenario(carrier=[one]), *PLACE, "window_low", "window_high") for one in (first, second)
-    ]
+    each = [at(scenario(carrier=[one]), *PLACE, "window_low", "window_high") for one in (first, second)]
     if math.isfinite(low):
         assert low >= max(float(one["window_low"]) for one in each) - 1e-6
         assert high <= min(float(one["window_high"]) for one in each) + 1e-6
@@ -340,7 +375,9 @@ def test_neighbours_by_moment():
     quiet = at(scenario(), *PLACES, "margin_before", "margin_realigned")
     for when, disturbed in (("before", ["margin_before"]), ("after", ["margin_realigned"]),
                             ("both", ["margin_before", "margin_realigned"])):  # fmt: skip
-        found = at(scenario(neighbour=[{**NEIGHBOUR, "when": when}]), *PLACES, "margin_before", "margin_realigned")
+        found = at(
+            scenario(neighbour=[{**NEIGHBOUR, "when": when}]), *PLACES, "margin_before", "margin_realigned"
+        )
         for name, margins in found.items():
             if name in disturbed:
                 assert np.all(margins < quiet[name] - 0.05), (when, name)
@@ -407,7 +444,9 @@ def test_a_neighbour_of_the_old_hand_disturbs_a_linear_carrier_in_a_circular_fee
 
 def test_a_neighbour_below_the_horizon_is_not_heard():
     scene = scenario(neighbour=[{**NEIGHBOUR, "longitude_deg": 120.0}])
-    np.testing.assert_array_equal(at(scene, *PLACES, "margin_before"), at(scenario(), *PLACES, "margin_before"))
+    np.testing.assert_array_equal(
+        at(scene, *PLACES, "margin_before"), at(scenario(), *PLACES, "margin_before")
+    )
 
 
 def test_worst_phasors_are_never_better():
@@ -438,7 +477,9 @@ def test_different_slots_are_never_mixed_up():
     # 48° N 2° E, satellites at 13° and 16° without tilt: the feed of a re-aimed dish turns −2.541°, in the
     # dish that stays the new satellite's V axis is −0.390° off (computed outside of this project).
     scene = scenario(
-        outgoing={"longitude_deg": 13.0, "tilt_deg": 0.0}, incoming={"longitude_deg": 16.0}, terminal={"dish_m": 0.4}
+        outgoing={"longitude_deg": 13.0, "tilt_deg": 0.0},
+        incoming={"longitude_deg": 16.0},
+        terminal={"dish_m": 0.4},
     )
     found = at(scene, 48.0, 2.0, "skew_before", "skew_after", "seen_after", "turn_realigned", "mismatch_untouched",
                "turn_shared")  # fmt: skip
@@ -466,7 +507,9 @@ def test_old_satellite_not_seen():
     weak = scenario(**changes, carrier={"required_es_n0_db": 30.0})
     assert action(weak, (-20.0, -45.0)) == "upgrade"
     assert action(scenario(**changes), (-20.0, 120.0)) == "no-sight"
-    found = at(scenario(**changes), -20.0, -45.0, "margin_realigned", "margin_before", "turn_realigned", "skew_after")
+    found = at(
+        scenario(**changes), -20.0, -45.0, "margin_realigned", "margin_before", "turn_realigned", "skew_after"
+    )
     assert np.isfinite(found["margin_realigned"])
     assert np.isfinite(found["skew_after"])
     assert np.isnan(found["margin_before"])
@@ -488,7 +531,9 @@ def test_lowest_elevation_is_kept_exactly():
 
 def test_actions_by_threshold():
     # One slot, tilt 21°: untouched there are about 7.8 dB of C/(N+I), aligned nearly 18, half-way nearly 13.
-    found = [action(scenario(carrier={"required_es_n0_db": required})) for required in (5.0, 10.0, 14.0, 20.0)]
+    found = [
+        action(scenario(carrier={"required_es_n0_db": required})) for required in (5.0, 10.0, 14.0, 20.0)
+    ]
     assert found == ["leave", "preset", "turn-at-changeover", "upgrade"]
 
 
@@ -514,7 +559,8 @@ def test_rain_decides_where_there_is_weather():
         np.testing.assert_array_equal(found[0][name], found[2][name])
     assert np.all(found[1]["fail_probability"] > found[0]["fail_probability"])
     assert np.all(
-        at(scenario(**rain), *PLACES, "margin_realigned_rain") < at(scenario(**rain), *PLACES, "margin_realigned")
+        at(scenario(**rain), *PLACES, "margin_realigned_rain")
+        < at(scenario(**rain), *PLACES, "margin_realigned")
     )
 
 
