@@ -66,7 +66,8 @@ def turns_of(table: pd.DataFrame, ports: Any) -> Turns:
     setting = np.asarray(fold(present + turn))
     slack = np.stack([numbers(table, "window_low"), numbers(table, "window_high")], axis=1)
     slack = np.where((ahead & np.isfinite(slack).all(axis=1))[:, None], slack, wanted[:, None])
-    bound = np.isfinite(low) | np.isfinite(high) | fixed | (ports > 1)
+    # Without stops the direct turn is open, and up to 45° no exchange of ports is shorter.
+    bound = np.isfinite(low) | np.isfinite(high) | fixed | ((ports > 1) & (np.abs(wanted) > 45.0))
     for row in np.flatnonzero(known & bound).tolist():
         feed = Feed(float(low[row]), float(high[row]), bool(fixed[row]), round(float(ports[row])))
         window = (float(slack[row, 0]), float(slack[row, 1]))
