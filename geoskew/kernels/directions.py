@@ -21,8 +21,9 @@ Single = NDArray[np.float32]
 
 # As in ``geoskew.geometry``: a level part this small against the distance is the zenith.
 _ZENITH_SQUARED: Final = 1e-26
-_SHRINK: Final = 2.0**-25
-_SHRINK_SQUARED: Final = 2.0**-50
+_ZENITH_SINGLE: Final = np.float32(_ZENITH_SQUARED)
+_HALF: Final = np.float32(0.5)
+_ONE: Final = np.float32(1.0)
 _IN_DEGREES: Final = np.float32(IN_DEGREES)
 _ZERO: Final = np.float32(0.0)
 _QUARTER_TURN: Final = np.float32(90.0)
@@ -53,24 +54,37 @@ def vector_row(
 
 
 @compiled
-def azimuth_row(east: Array, north: Array, r: Array, azimuth: Single) -> None:
-    """Degrees clockwise from north in [0, 360), 0 at the zenith."""
-    for j in range(azimuth.size):
-        e, n = east[j], north[j]
-        bearing = _IN_DEGREES * arctan_ratio_single(np.float32(e), np.float32(n))
-        southern = (n < 0.0) | ((n == 0.0) & (e < 0.0))
-        bearing = bearing + _HALF_TURN if southern else bearing
-        bearing = bearing + _FULL_TURN if bearing < _ZERO else bearing
-        bearing = _ZERO if bearing >= _FULL_TURN else bearing
-        azimuth[j] = _ZERO if e * e + n * n < _ZENITH_SQUARED * r[j] * r[j] else bearing
+def unit_row(east: Array, north: Array, up: Array, r: Array, unit: Single) -> None:
+    """Unit vectors of single precision, (3, W): loops over nothing else are twice as wide."""
+    u_east, u_north, u_up = unit[0], unit[1], unit[2]
+    for j in range(r.size):
+        scale = 1.0 / r[j]
+        u_east[j] = np.float32(east[j] * scale)
+        u_north[j] = np.float32(north[j] * scale)
+        u_up[j] = np.float32(up[j] * scale)
 
 
 @compiled
-def elevation_row(east: Array, north: Array, up: Array, elevation: Single) -> None:
+def azimuth_row(unit: Single, azimuth: Single) -> None:
+    """Degrees clockwise from north in [0, 360), 0 at the zenith."""
+    east, north = unit[0], unit[1]
+    for j in range(azimuth.size):
+        e, n = east[j], north[j]
+        bearing = _IN_DEGREES * arctan_ratio_single(e, n)
+        southern = (n < _ZERO) | ((n == _ZERO) & (e < _ZERO))
+        bearing = bearing + _HALF_TURN if southern else bearing
+        bearing = bearing + _FULL_TURN if bearing < _ZERO else bearing
+        bearing = _ZERO if bearing >= _FULL_TURN else bearing
+        azimuth[j] = _ZERO if e * e + n * n < _ZENITH_SINGLE else bearing
+
+
+@compiled
+def elevation_row(unit: Single, elevation: Single) -> None:
     """Degrees above the horizontal, negative below it."""
+    east, north, up = unit[0], unit[1], unit[2]
     for j in range(elevation.size):
-        level = np.float32(np.sqrt(east[j] * east[j] + north[j] * north[j]))
-        elevation[j] = _IN_DEGREES * arctan_ratio_single(np.float32(up[j]), level)
+        level = np.sqrt(east[j] * east[j] + north[j] * north[j])
+        elevation[j] = _IN_DEGREES * arctan_ratio_single(up[j], level)
 
 
 @compiled
@@ -117,19 +131,43 @@ def vertical_row(to: Array, r: Array, arriving: Array, angle: Array) -> None:
 
 
 @compiled
-def vertical_row_single(to: Array, r: Array, arriving: Array, angle: Single) -> None:
-    """The same angle in degrees and single precision, in (−90, 90]."""
-    east, north = to[0], to[1]
-    v_east, v_north, v_up = arriving[0], arriving[1], arriving[2]
+def narrowed(values: Array, out: Single) -> None:
+    """Values in single precision."""
+    for j in range(values.size):
+        out[j] = np.float32(values[j])
+
+
+@compiled
+def single_row(cosine: Single, sine: Single, own: Single, frame: Single, unit: Single, angle: Single) -> None:
+    """`arriving_row` and `vertical_row` in one and in single precision, degrees in (−90, 90].
+
+    `cosine`, `sine` and `own` (2, W) of longitude and latitude. High up, where the vertical all but
+    vanishes in the view, its component follows from the two others: the vector is normal to `unit`.
+    """
+    x, y, z = frame[0, 0], frame[0, 1], frame[0, 2]
+    a, b, c = frame[1, 0], frame[1, 1], frame[1, 2]
+    s_lat, c_lat = own[0], own[1]
+    east, north, up = unit[0], unit[1], unit[2]
     for j in range(angle.size):
-        e, n = east[j], north[j]
-        zenith = e * e + n * n < _ZENITH_SQUARED * r[j] * r[j]
-        right = v_east[j] if zenith else v_east[j] * n - v_north[j] * e
-        top = -v_north[j] if zenith else r[j] * v_up[j]
-        # Brought near 1: products of metres leave the range of single precision.
-        scale = _SHRINK if zenith else _SHRINK_SQUARED
-        a = _IN_DEGREES * arctan_ratio_single(np.float32(right * scale), np.float32(top * scale))
-        angle[j] = _QUARTER_TURN if a <= -_QUARTER_TURN else a
+        e, n, u = east[j], north[j], up[j]
+        out_x, out_b = x * cosine[j] + y * sine[j], a * cosine[j] + b * sine[j]
+        x_east, b_east = y * cosine[j] - x * sine[j], b * cosine[j] - a * sine[j]
+        x_north, b_north = z * c_lat[j] - s_lat[j] * out_x, c * c_lat[j] - s_lat[j] * out_b
+        x_up, b_up = z * s_lat[j] + c_lat[j] * out_x, c * s_lat[j] + c_lat[j] * out_b
+        along = x_east * e + x_north * n + x_up * u
+        axial = b_east * e + b_north * n + b_up * u
+        f = -along / (_ONE - axial)
+        v_east = x_east - f * (b_east - e)
+        v_north = x_north - f * (b_north - n)
+        v_up = x_up - f * (b_up - u)
+        high = u * u > _HALF
+        right = (v_east * n - v_north * e) * (u if high else _ONE)
+        top = -(v_east * e + v_north * n) if high else v_up
+        zenith = e * e + n * n < _ZENITH_SINGLE
+        right = v_east if zenith else right
+        top = -v_north if zenith else top
+        degrees = _IN_DEGREES * arctan_ratio_single(right, top)
+        angle[j] = _QUARTER_TURN if degrees <= -_QUARTER_TURN else degrees
 
 
 @compiled

@@ -15,9 +15,11 @@ from geoskew.kernels.directions import (
     azimuth_row,
     carry_row,
     elevation_row,
+    narrowed,
+    single_row,
+    unit_row,
     vector_row,
     vertical_row,
-    vertical_row_single,
 )
 
 Array = NDArray[np.float64]
@@ -96,7 +98,9 @@ def look(
     """
     width = meridian.shape[2]
     to, arriving, own = np.empty((3, _CHUNK)), np.empty((3, _CHUNK)), np.empty((5, _CHUNK))
-    lengths = np.empty(_CHUNK)
+    lengths, single = np.empty(_CHUNK), frame.astype(np.float32)
+    unit = np.empty((3, _CHUNK), dtype=np.float32)
+    turn, latitude = np.empty((2, _CHUNK), dtype=np.float32), np.empty((2, _CHUNK), dtype=np.float32)
     for i in range(parallel.shape[0]):
         k = i if meridian.shape[0] > 1 else 0
         for start in range(0, width, _CHUNK):
@@ -104,10 +108,12 @@ def look(
             cos, sin, r = meridian[k, 0, start:stop], meridian[k, 1, start:stop], lengths[: stop - start]
             _spread(parallel, i, start, r.size, own)
             vector_row(cos, sin, own, position, to[0], to[1], to[2], r)
+            if azimuth.size or elevation.size or skew_degrees.size:
+                unit_row(to[0], to[1], to[2], r, unit)
             if azimuth.size:
-                azimuth_row(to[0], to[1], r, azimuth[i, start:stop])
+                azimuth_row(unit, azimuth[i, start:stop])
             if elevation.size:
-                elevation_row(to[0], to[1], to[2], elevation[i, start:stop])
+                elevation_row(unit, elevation[i, start:stop])
             if kilometres.size:
                 for j in range(r.size):
                     kilometres[i, start + j] = 1e-3 * r[j]
@@ -116,12 +122,14 @@ def look(
             if sine.size:
                 for j in range(r.size):
                     sine[i, start + j] = to[2, j] / r[j]
-            if skew.size or skew_degrees.size:
+            if skew.size:
                 arriving_row(cos, sin, own, frame, to, r, arriving)
-                if skew.size:
-                    vertical_row(to, r, arriving, skew[i, start:stop])
-                if skew_degrees.size:
-                    vertical_row_single(to, r, arriving, skew_degrees[i, start:stop])
+                vertical_row(to, r, arriving, skew[i, start:stop])
+            if skew_degrees.size:
+                for m in range(2):
+                    narrowed(meridian[k, m, start:stop], turn[m])
+                    narrowed(own[m, : r.size], latitude[m])
+                single_row(turn[0], turn[1], latitude, single, unit, skew_degrees[i, start:stop])
 
 
 @compiled
