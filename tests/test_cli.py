@@ -129,7 +129,7 @@ def test_check_finds_rejected_rows_wrong(call: Caller, cone: Path) -> None:
     said = call("check", cone)
     assert said.status == 2
     assert len(said.lines) == DIRTY + 1
-    assert said.lines[-1] == f"geoskew: {DIRTY} problems found"
+    assert said.lines[-1].startswith(f"geoskew: {DIRTY} problems found; a run sets these rows aside")
     assert all(re.match(r"geoskew: .*/a cone ñ/sites\.csv:\d+: ", line) for line in said.lines[:-1])
     assert "latitude and longitude look exchanged" in said.err
     assert "cells of 2°" in said.out  # what a run would write is told all the same
@@ -155,7 +155,9 @@ def test_check_lists_problems_of_all_inputs_once(call: Caller, tmp_path: Path) -
 def test_spot_gives_every_layer(call: Caller, cone: Path) -> None:
     said = call("spot", cone, "--at=-33.9,-60.6")
     assert (said.status, said.err) == (0, "")
-    names = [line.split()[0] for line in said.out.splitlines()]
+    heading, empty, *rows = said.out.splitlines()
+    assert (heading, empty) == ("-33.9, -60.6 (latitude, longitude), height not known", "")
+    names = [line.split()[0] for line in rows]
     assert {"skew_after", "action", "margin_untouched_rain"} <= set(names)
     values = json.loads(call("spot", cone, "--at", "-33.9,-60.6", "--json").out)
     assert list(values) == names
