@@ -282,6 +282,7 @@ def test_a_changed_scenario_uses_no_tile_of_the_old_one(plan: Path, tmp_path: Pa
     changed = job_of(plan, tmp_path / "layers")
     assert changed.folder.path != job.folder.path
     assert not changed.folder.is_finished(window)
+    assert changed.folder.others() == [job.folder.path]
     # tiles that were moved there by hand are not taken for ours
     changed.folder.prepare()
     job.folder.place(window).rename(changed.folder.place(window))

@@ -6,6 +6,7 @@ from pathlib import Path
 
 from geoskew.errors import InputError, Problem
 from geoskew.fieldwork.visits import read_distances
+from geoskew.study import database
 from geoskew.study.core import Study
 from geoskew.study.foretold import bytes_of_run, in_words
 from geoskew.study.run import final_names
@@ -21,6 +22,8 @@ def check(path: Path) -> tuple[list[Problem], list[str]]:
     """
     study = Study(path)
     problems = study.problems() + _distances(study)
+    if not problems:
+        problems, tables = _tables(study)
     if problems:
         return problems + _rejected(study), []
     lines = [study.scenario.title, study.judged, *_region(study), *_sites(study)]
@@ -28,7 +31,7 @@ def check(path: Path) -> tuple[list[Problem], list[str]]:
         names = final_names(study, Path("DIR"))
         lines.append(f"a run writes {len(names)} files, about {in_words(bytes_of_run(study))} in all:")
         lines += [f"  {name.as_posix()}" for name in names]
-    return _rejected(study), lines
+    return _rejected(study), lines + tables
 
 
 def _distances(study: Study) -> list[Problem]:
@@ -41,6 +44,20 @@ def _distances(study: Study) -> list[Problem]:
     except InputError as error:
         return list(error.problems)
     return []
+
+
+def _tables(study: Study) -> tuple[list[Problem], list[str]]:
+    """What keeps the database's tables from taking results, or a line on what goes there."""
+    if not database.wants_tables(study):
+        return [], []
+    scenario = study.scenario
+    try:
+        target = database.target_of(study, sites=scenario.has_sites, region=scenario.region is not None)
+        database.require_ready(target)
+    except InputError as error:
+        return list(error.problems), []
+    names = " and ".join(table.fullname for table in target.tables)
+    return [], [f"and, in the database, rows of run {target.stamp.run!r} in {names}"]
 
 
 def _region(study: Study) -> list[str]:

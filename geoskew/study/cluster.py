@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
+from logging import getLogger
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -19,6 +20,8 @@ from geoskew.outputs.raster.storage import Precision, encode, storage_of
 
 if TYPE_CHECKING:
     from geoskew.study.core import Study
+
+_log = getLogger(__name__)
 
 
 @dataclass(frozen=True)
@@ -70,6 +73,10 @@ def blocks_of_cluster(
     folder = tile_folder(study, beside, names, precision)
     with session(where) as client:
         folder.prepare()
+        for other in folder.others():
+            _log.warning(
+                "%s holds tiles of another scenario or other layers; remove it when not needed", other
+            )
         job = Job(
             scenario=study.scenario,
             inputs=study.inputs,

@@ -108,6 +108,10 @@ class TileFolder:
             if time.time() - part.stat().st_mtime > _STALE_SECONDS:
                 shutil.rmtree(part, ignore_errors=True)
 
+    def others(self) -> list[Path]:
+        """Folders of tiles of other jobs that lie beside this one."""
+        return sorted(path for path in self.path.parent.glob(".tiles-*") if path != self.path)
+
     def require_seen(self) -> None:
         """Check, on a worker, that this is the folder that the other end made.
 
