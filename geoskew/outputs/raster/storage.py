@@ -21,6 +21,9 @@ _DEFAULT_STEP: Final = 2.0**-10
 _STEPS: Final[dict[str, float]] = {"km": 2.0**-6}
 
 
+_STRIP_ROWS: Final = 128
+
+
 @dataclass(frozen=True, slots=True)
 class Storage:
     """What a layer's file holds: ``step`` is the rounding in the layer's unit, 0 for none."""
@@ -80,6 +83,17 @@ def encode(values: NDArray[Any], layer: Layer, storage: Storage) -> NDArray[Any]
             return values
         return np.where(np.isnan(values), CLASS_NODATA, values).astype(np.uint8)
     values = values if np.issubdtype(values.dtype, np.floating) else values.astype(np.float64)
+    if values.ndim < 2:
+        return _encoded(values, layer, storage)
+    # Strips stay in the processor's cache, which a block with its temporary arrays does not.
+    encoded = np.empty(values.shape, dtype=np.float32)
+    for start in range(0, values.shape[0], _STRIP_ROWS):
+        strip = slice(start, start + _STRIP_ROWS)
+        encoded[strip] = _encoded(values[strip], layer, storage)
+    return encoded
+
+
+def _encoded(values: NDArray[Any], layer: Layer, storage: Storage) -> NDArray[np.float32]:
     stored = values
     if storage.step:
         # scaling by a power of two is exact in either float type
