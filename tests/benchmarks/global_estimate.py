@@ -72,10 +72,11 @@ step_deg = {step!r}
 
 @dataclass
 class Measured:
-    """Seconds of wall and of all cores, and the greatest size of the folder of tiles."""
+    """Seconds of wall, of all processors and of this process, and the greatest size of the folder of tiles."""
 
     wall: float = 0.0
     cpu: float = 0.0
+    own: float = 0.0
     tile_bytes: int = 0
 
 
@@ -86,16 +87,18 @@ def measured(folder: Path, workers: Sequence[int]) -> Iterator[Measured]:
 
     def watch() -> None:
         while not done.wait(0.5):
-            sizes = [size_of(path) for path in folder.glob(".tiles-*/*/*.tif")]
+            files = (f"{at}/{name}" for at, _, names in os.walk(folder) for name in names)
+            sizes = [size_of(Path(file)) for file in files if "/.tiles-" in file and file.endswith(".tif")]
             found.tile_bytes = max(found.tile_bytes, sum(sizes))
 
     watcher = threading.Thread(target=watch)
     watcher.start()
-    wall, cpu = time.monotonic(), cpu_seconds(workers)
+    wall, cpu, own = time.monotonic(), cpu_seconds(workers), cpu_seconds(())
     try:
         yield found
     finally:
         found.wall, found.cpu = time.monotonic() - wall, cpu_seconds(workers) - cpu
+        found.own = cpu_seconds(()) - own
         done.set()
         watcher.join()
 
@@ -162,6 +165,7 @@ def middle(found: Sequence[Measured]) -> Measured:
     return Measured(
         statistics.median(one.wall for one in found),
         statistics.median(one.cpu for one in found),
+        statistics.median(one.own for one in found),
         max(one.tile_bytes for one in found),
     )
 
@@ -183,7 +187,9 @@ def tell(folder: Path, grid: Grid, found: Mapping[str, Measured]) -> None:
     final = sum(size_of(folder / "dask" / name) for name in files)
     times = CELLS / grid.cells
     print(f"Earth at 30 m, {len(LAYERS)} layers, {CELLS:,} cells, {times:,.0f} times as many:")
-    print(f"  {dask.cpu * times / 3600.0:,.0f} hours of one core")
+    print(
+        f"  {dask.cpu * times / 3600.0:,.0f} hours of one core, {dask.own * times / 3600.0:,.0f} of them of the one writer"
+    )
     print(
         f"  {final * times / 1e12:,.2f} TB of final files, {dask.tile_bytes * times / 1e12:,.2f} TB of tiles"
     )
