@@ -35,7 +35,7 @@ def test_wrong_input(wrong: Wrong, tmp_path: Path, capsys: pytest.CaptureFixture
     said = capsys.readouterr()
     lines = said.err.splitlines()
     if wrong.arguments == ("check", "{plan}"):
-        assert lines.pop() == "geoskew: 1 problem found"
+        assert lines.pop().startswith("geoskew: 1 problem found; a run ")
     assert (status, said.out) == (wrong.status, "")
     assert len(lines) == len(wrong.said), said.err
     for line, pattern in zip(lines, wrong.said, strict=True):

@@ -24,7 +24,7 @@ Block = tuple[Window, Values]
 # A grid of fewer cells is done by the time that the compiler would be.
 COMPILED_FROM_CELLS: Final = 10_000_000
 # Rows worked on at once: keeps the hundreds of intermediate arrays small.
-STRIP_ROWS: Final = 64
+STRIP_ROWS: Final = 24
 
 
 def compute_block(
