@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
+from dataclasses import replace
 from pathlib import Path
 from tempfile import TemporaryDirectory
 
@@ -43,6 +44,9 @@ def content_of(
             made = write_study_rasters(study, Path(scratch), names, report=report)
             rasters = dict(zip(names, made, strict=True))
         content = map_content(study, rasters, overlays=overlays, planned=planned, tiles=tiles)
+    if only or blur_deg is not None:
+        # Districts are named amid all their sites: not for those who need not see them.
+        content = replace(content, places=())
     if only:
         content = fieldmap.only(content, only)
     if blur_deg is not None:

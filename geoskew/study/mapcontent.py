@@ -20,6 +20,7 @@ from geoskew.outputs.fieldmap import (
     GeometryFacts,
     MapContent,
     Overlay,
+    PlaceName,
     Route,
     SatelliteFacts,
     Tiles,
@@ -32,6 +33,8 @@ from geoskew.study.plan import judged_suffix
 from geoskew.study.reasons import scenario_notes
 
 if TYPE_CHECKING:
+    import pandas as pd
+
     from geoskew.study.core import Study
     from geoskew.study.plan import Planned
 
@@ -92,6 +95,7 @@ def map_content(
         coverage=[line for line in lines if line.layer.startswith("eirp_")],
         routes=[] if planned is None else _routes(planned),
         basemap=_basemap,
+        places=[] if table is None else _districts(table),
         tiles=background(tiles),
     )
 
@@ -162,6 +166,19 @@ def _satellite(satellite: Any) -> SatelliteFacts:
         tilt=satellite.tilt_deg,
         aim=None if aim is None else (aim.lon_deg, aim.lat_deg),
     )
+
+
+def _districts(table: pd.DataFrame) -> list[PlaceName]:
+    """Names of the districts that the site list gives, each amid its sites."""
+    if "district" not in table.columns:
+        return []
+    named = table[table["district"].fillna("").astype(str) != ""]
+    names = []
+    for district, sites in named.groupby("district", sort=True):
+        longitudes = np.unwrap(sites["lon"].to_numpy(dtype=float), period=360.0)
+        middle = float(np.mod(longitudes.mean() + 180.0, 360.0) - 180.0)
+        names.append(PlaceName(str(district), middle, float(sites["lat"].mean())))
+    return names
 
 
 def _overlay(name: str, path: Path) -> Overlay:

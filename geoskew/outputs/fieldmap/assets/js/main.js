@@ -50,7 +50,8 @@
         if (fm.drawing.lines.size) fm.drawContours(pen, view, fm.contours, fm.drawing.lines, space);
         if (fm.drawing.coverage.size) fm.drawContours(pen, view, fm.coverage, fm.drawing.coverage, space);
         if (fm.routes && fm.drawing.routes && (fm.choice.crew || fm.choice.day)) fm.drawRoutes(pen, view, fm.routes, fm.choice.crew, fm.choice.day);
-        fm.drawNames(pen, view, meta.names, space);
+        // From afar the marks lie on the names.
+        if (fm.map.getZoom() >= 6) fm.drawNames(pen, view, meta.names, space);
       },
     }).addTo(map);
     marks = new fm.Sheet({
