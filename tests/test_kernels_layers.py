@@ -183,6 +183,8 @@ def test_a_large_grid_takes_the_loops(
         return evaluate(*arguments, compiled=compiled, **more)
 
     monkeypatch.setattr(blocks, "evaluate", watched)
+    # All rows in one strip, so that each block is one call.
+    monkeypatch.setattr(blocks, "STRIP_ROWS", 27)
     whole = Window(0, 0, 27, 43)
     _, plain = blocks.compute_block(scenario, inputs, grid, whole, ["skew_after", "action"])
     monkeypatch.setattr(blocks, "COMPILED_FROM_CELLS", 1)
