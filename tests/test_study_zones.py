@@ -61,9 +61,7 @@ def test_every_cell_once_and_within_the_tolerance(plan, of):
     assert np.nanmax(apart) <= TOLERANCE + 1e-5  # settings are written to six decimals
     for number, zone in enumerate(frame.itertuples()):
         assert zone.cells == inside[number].sum()
-        assert zone.worst_deviation_deg == pytest.approx(
-            apart[inside[number]].max(), abs=1e-5
-        )  # cells are 32-bit floats: 4e-6 at 90°
+        assert zone.worst_deviation_deg == pytest.approx(apart[inside[number]].max(), abs=2e-6)
     assert frame["percent"].sum() == pytest.approx(100.0, abs=1e-4)
     # A simple bound for a field of values close together: bands of 2t and the gaps between them.
     ordered = np.sort(own[np.isfinite(own)])

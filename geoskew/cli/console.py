@@ -7,8 +7,12 @@ import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import click
+
+if TYPE_CHECKING:
+    from geoskew.study.core import Study
 
 Report = Callable[[str, float, float], None]
 
@@ -26,7 +30,7 @@ def progress(*, quiet: bool) -> Iterator[Report]:
 @contextmanager
 def _bars() -> Iterator[Report]:
     from rich.console import Console
-    from rich.progress import BarColumn, Progress, TextColumn, TimeRemainingColumn
+    from rich.progress import BarColumn, Progress, TaskID, TextColumn, TimeRemainingColumn
 
     console = Console(stderr=True)
     columns = (
@@ -36,12 +40,12 @@ def _bars() -> Iterator[Report]:
         TimeRemainingColumn(),
     )
     with Progress(*columns, console=console, transient=True) as bars:
-        tasks: dict[str, object] = {}
+        tasks: dict[str, TaskID] = {}
 
         def report(phase: str, done: float, total: float) -> None:
             if phase not in tasks:
                 tasks[phase] = bars.add_task(phase, total=total)
-            bars.update(tasks[phase], completed=done, total=total)  # type: ignore[arg-type]  # rich's TaskID is an int
+            bars.update(tasks[phase], completed=done, total=total)
 
         yield report
 
@@ -68,13 +72,13 @@ def listen(*, quiet: bool, verbose: bool) -> None:
     logger.setLevel(logging.ERROR if quiet else logging.INFO if verbose else logging.WARNING)
 
 
-def tell_rejected(study: object, folder: Path) -> None:
+def tell_rejected(study: Study, folder: Path) -> None:
     """One line on rows that could not be used; with `-q` too, since those sites are missing everywhere."""
-    scenario = study.scenario  # type: ignore[attr-defined]  # a Study; naming it would import everything
+    scenario = study.scenario
     if not scenario.has_sites:
         return
-    rejected = study.sites.rejected  # type: ignore[attr-defined]
+    rejected = study.sites.rejected
     if rejected:
         rows = "row" if len(rejected) == 1 else "rows"
-        source = study.sites.source.name  # type: ignore[attr-defined]
+        source = study.sites.source.name
         say(f"{len(rejected)} {rows} of {source} could not be used; see {folder / 'rejected.csv'}")

@@ -3,11 +3,15 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 import click
 
 from geoskew.cli import console, options
+
+if TYPE_CHECKING:
+    from geoskew.study.core import Study
+    from geoskew.study.run import Settings
 
 
 @click.command("run", epilog="Example: geoskew run plan.toml --out result")
@@ -50,12 +54,12 @@ def command(
     run_and_tell(study, out, settings, quiet=quiet, verbose=verbose)
 
 
-def run_and_tell(study: object, out: Path, settings: object, *, quiet: bool, verbose: bool) -> None:
+def run_and_tell(study: Study, out: Path, settings: Settings, *, quiet: bool, verbose: bool) -> None:
     """Run a study and say what came of it; `demo` does the same."""
     from geoskew.study.run import run, summary_line
 
     with console.progress(quiet=quiet) as report:
-        written = run(study, out, settings, report)  # type: ignore[arg-type]  # typed lazily: the import is heavy
+        written = run(study, out, settings, report)
     console.tell_rejected(study, out)
     for remark in written.remarks:
         console.say(remark, quiet=quiet)

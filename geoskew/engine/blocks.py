@@ -34,7 +34,15 @@ def compute_block(
     return window, _values(scenario, inputs, grid, window, names)
 
 
-def _values(scenario: Scenario, inputs: Inputs, grid: Grid, window: Window, names: Sequence[str]) -> Values:
+def _values(
+    scenario: Scenario,
+    inputs: Inputs,
+    grid: Grid,
+    window: Window,
+    names: Sequence[str],
+    floats: type[np.floating[Any]] = np.float32,
+) -> Values:
+    # Rasters store 32-bit floats; half the memory of a block in flight.
     compiled = grid.cells >= COMPILED_FROM_CELLS and kernels.ready()
     # Loops make few intermediate arrays, but rain goes through the plain formulas in any case.
     height = window.height if compiled and scenario.weather is None else STRIP_ROWS
@@ -47,8 +55,7 @@ def _values(scenario: Scenario, inputs: Inputs, grid: Grid, window: Window, name
             return made
         for name, part in made.items():
             if name not in values:
-                # Rasters store 32-bit floats; half the memory of a block in flight.
-                kind = np.float32 if part.dtype == np.float64 else part.dtype
+                kind = floats if part.dtype == np.float64 else part.dtype
                 values[name] = np.empty((window.height, window.width), dtype=kind)
             values[name][rows] = part
     return values
@@ -71,18 +78,25 @@ def computed_blocks(
     """All blocks of a grid in order, computed by threads that run at most one block ahead each.
 
     Memory is bounded by the blocks in flight, whatever the grid's size; the values do not depend on
-    the number of workers. numpy works outside of the interpreter's lock, so threads are enough.
+    the number of workers. numpy works outside of the interpreter's lock, so threads are enough. For
+    further calculation: plain formulas keep their 64-bit floats.
     """
+    compute = partial(_values, scenario, inputs, grid, names=names, floats=np.float64)
     workers = workers or os.cpu_count() or 1
-    waiting: deque[Future[Block]] = deque()
+    waiting: deque[tuple[Window, Future[Values]]] = deque()
+
+    def first() -> Block:
+        window, future = waiting.popleft()
+        return window, future.result()
+
     with ThreadPoolExecutor(max_workers=workers) as pool:
         try:
             for window in grid.windows():
-                waiting.append(pool.submit(compute_block, scenario, inputs, grid, window, names))
+                waiting.append((window, pool.submit(compute, window)))
                 if len(waiting) > workers:
-                    yield waiting.popleft().result()
+                    yield first()
             while waiting:
-                yield waiting.popleft().result()
+                yield first()
         finally:
-            for future in waiting:
+            for _, future in waiting:
                 future.cancel()

@@ -85,7 +85,7 @@ def session(where: str) -> Iterator[Any]:
         if where.startswith("local:"):
             stack.enter_context(dask.config.set({"distributed.nanny.pre-spawn-environ": ENVIRONMENT}))
             address = stack.enter_context(
-                LocalCluster(  # type: ignore[no-untyped-call]
+                LocalCluster(  # type: ignore[no-untyped-call]  # the library has no types
                     n_workers=int(where.partition(":")[2]),
                     threads_per_worker=1,
                     host="127.0.0.1",
@@ -94,7 +94,8 @@ def session(where: str) -> Iterator[Any]:
                 )
             )
         try:
-            client = stack.enter_context(Client(address, timeout=_CONNECT_SECONDS))  # type: ignore[no-untyped-call]
+            opened = Client(address, timeout=_CONNECT_SECONDS)  # type: ignore[no-untyped-call]  # as above
+            client = stack.enter_context(opened)
             client.wait_for_workers(1, timeout=_WORKERS_SECONDS)
         except TimeoutError as error:
             raise GeoskewError(f"the scheduler at {where} has no workers; {_START}") from error

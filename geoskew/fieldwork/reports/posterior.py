@@ -14,7 +14,7 @@ import numpy as np
 
 from geoskew.angles import fold
 from geoskew.fieldwork.reports.evidence import Accuracy, Array, Evidence, Meter, Slot, weights_of
-from geoskew.fieldwork.reports.hypotheses import AIM_LOSSES_DB, NAMES, Plan, branches
+from geoskew.fieldwork.reports.hypotheses import AIM_LOSSES_DB, NAMES, Branch, Plan, branches
 
 # Nodes of the Gauss-Hermite rule over the setting that the crew found.
 _NODES: Final = 9
@@ -112,11 +112,11 @@ class Reasoning:
         ]
         return np.stack(columns, axis=1) if columns else np.zeros((self.plan.present.size, 0), dtype=bool)
 
-    def _foretold(self, branch: object, found_mean: Array) -> Array:
+    def _foretold(self, branch: Branch, found_mean: Array) -> Array:
         """Readings (M, N, K) along a branch; 0 where there is none to foretell."""
-        setting: Array = branch.setting  # type: ignore[attr-defined]
-        aim, stays = branch.aim, branch.stays  # type: ignore[attr-defined]
-        aim_found = branch.aim_found  # type: ignore[attr-defined]
+        setting: Array = branch.setting
+        aim, stays = branch.aim, branch.stays
+        aim_found = branch.aim_found
         found = found_mean if aim_found == 0 else self._found(aim_found)[0]
         columns = [
             np.broadcast_to(found[:, k], setting.shape)

@@ -9,7 +9,7 @@ from __future__ import annotations
 import math
 import time
 from collections.abc import Callable
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -117,14 +117,14 @@ def _search(metres: NDArray[np.int64], start: list[list[int]], limits: Limits) -
     return [_tour(model, manager, solution, vehicle) for vehicle in range(len(start))]
 
 
-def _tour(model: object, manager: object, solution: object, vehicle: int) -> list[int]:
+def _tour(model: Any, manager: Any, solution: Any, vehicle: int) -> list[int]:
     """The places of one vehicle in driving order."""
     tour: list[int] = []
-    index = model.Start(vehicle)  # type: ignore[attr-defined]
-    while not model.IsEnd(index):  # type: ignore[attr-defined]
-        index = solution.Value(model.NextVar(index))  # type: ignore[attr-defined]
-        if not model.IsEnd(index):  # type: ignore[attr-defined]
-            tour.append(int(manager.IndexToNode(index)))  # type: ignore[attr-defined]
+    index = model.Start(vehicle)
+    while not model.IsEnd(index):
+        index = solution.Value(model.NextVar(index))
+        if not model.IsEnd(index):
+            tour.append(int(manager.IndexToNode(index)))
     return tour
 
 
